@@ -1,0 +1,9 @@
+"""The ledger: a folder that holds all that is known about one photo root. The only room that speaks SQL.
+
+`record.sqlite` holds what people said and what the roll is (precious); `derived/` what machines worked out
+(may be deleted at any time: the next intake makes it again).
+"""
+
+from curator.ledger.ledger import EditionRow, Ledger
+
+__all__ = ["EditionRow", "Ledger"]

@@ -1,0 +1,57 @@
+"""The numbered migrations. A migration that has been released is never edited: a new one follows it."""
+
+RECORD = (
+    (
+        "CREATE TABLE setting (key TEXT PRIMARY KEY, value TEXT NOT NULL)",
+        """CREATE TABLE photo (
+            id INTEGER PRIMARY KEY,
+            raw BLOB NOT NULL UNIQUE,      -- file-system bytes of the path relative to the root
+            name TEXT NOT NULL UNIQUE,     -- what is shown, compared and written
+            identity TEXT NOT NULL,
+            size INTEGER NOT NULL,
+            mtime_ns INTEGER NOT NULL,
+            digest TEXT,                   -- NULL where the bytes could not be read
+            why TEXT)""",
+        "CREATE INDEX photo_identity ON photo (identity)",
+        """CREATE TABLE attribute (
+            photo TEXT NOT NULL, attribute TEXT NOT NULL, value TEXT NOT NULL,
+            PRIMARY KEY (photo, attribute)) WITHOUT ROWID""",
+        """CREATE TABLE verdict (
+            id INTEGER PRIMARY KEY,
+            photo_a TEXT NOT NULL, photo_b TEXT NOT NULL, answer TEXT NOT NULL,
+            annotator TEXT NOT NULL, at TEXT NOT NULL, shown TEXT NOT NULL,
+            digest_a TEXT, digest_b TEXT,  -- what the files were then, should they be renamed or replaced
+            UNIQUE (photo_a, photo_b, answer, annotator, at))""",
+        # What people said is only ever added to.
+        """CREATE TRIGGER verdict_is_never_changed BEFORE UPDATE ON verdict
+           BEGIN SELECT RAISE(ABORT, 'verdicts are only ever added'); END""",
+        """CREATE TRIGGER verdict_is_never_removed BEFORE DELETE ON verdict
+           BEGIN SELECT RAISE(ABORT, 'verdicts are only ever added'); END""",
+        """CREATE TABLE split (
+            id INTEGER PRIMARY KEY, at TEXT NOT NULL, seed INTEGER NOT NULL,
+            gap_to_bound REAL NOT NULL, recipe TEXT NOT NULL)""",
+        """CREATE TABLE split_identity (
+            split INTEGER NOT NULL REFERENCES split (id), identity TEXT NOT NULL, part TEXT NOT NULL,
+            PRIMARY KEY (split, identity)) WITHOUT ROWID""",
+        """CREATE TABLE edition (
+            number INTEGER PRIMARY KEY, path TEXT NOT NULL, data_digest TEXT NOT NULL, seed INTEGER NOT NULL,
+            recipe TEXT NOT NULL, at TEXT NOT NULL)""",
+    ),
+)
+
+DERIVED = (
+    (
+        """CREATE TABLE reading (
+            id INTEGER PRIMARY KEY,
+            digest TEXT NOT NULL, maker TEXT NOT NULL, why TEXT,
+            file_bytes INTEGER NOT NULL, width INTEGER NOT NULL, height INTEGER NOT NULL,
+            dct BLOB NOT NULL, difference BLOB NOT NULL, mirror BLOB NOT NULL,
+            sharpness REAL NOT NULL, brightness REAL NOT NULL, contrast REAL NOT NULL, clipped REAL NOT NULL,
+            faces INTEGER NOT NULL, frame BLOB, landmarks BLOB, eye_distance REAL, embedding BLOB,
+            UNIQUE (digest, maker))""",
+        # Apart from the readings, so that loading the columns of a large roll does not wade through pictures.
+        """CREATE TABLE thumbnail (
+            id INTEGER PRIMARY KEY, digest TEXT NOT NULL UNIQUE, jpeg BLOB NOT NULL)""",
+        "CREATE TABLE finding (kind TEXT PRIMARY KEY, key TEXT NOT NULL, document TEXT NOT NULL)",
+    ),
+)
