@@ -4,6 +4,7 @@
 (may be deleted at any time: the next intake makes it again).
 """
 
-from curator.ledger.ledger import EditionRow, Ledger
+from curator.ledger.ledger import Ledger
+from curator.ledger.record import EditionRow
 
 __all__ = ["EditionRow", "Ledger"]

@@ -1,4 +1,4 @@
-"""One SQLite file: opened private, brought to the present schema, spoken to in transactions, its failures put in words."""
+"""One SQLite file: opened private, brought to the present schema, used in transactions, its failures put in words."""
 
 from __future__ import annotations
 

@@ -59,9 +59,7 @@ def _row(r: Reading) -> tuple[Any, ...]:
 
 def readings(derived: Database, roll: Roll, maker: str, reasons: Mapping[str, str]) -> Readings:
     """The readings of one maker as columns along the roll; photos without one say why."""
-    by_digest = {
-        row[0]: row[1:] for row in derived.rows(f"SELECT {_COLUMNS} FROM reading WHERE maker = ?", (maker,))
-    }
+    by_digest = {row[0]: row[1:] for row in derived.rows(f"SELECT {_COLUMNS} FROM reading WHERE maker = ?", (maker,))}
     rows = [by_digest.get(digest) for digest in roll.digests]
     why = tuple(
         row[0] if row is not None else reasons.get(photo, NOT_READ_YET)

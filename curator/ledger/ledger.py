@@ -37,9 +37,7 @@ class Ledger:
         self._record = record
         self._derived = derived
         # One lock object a path in this process: the window's threads share the right to write.
-        self._lock = FileLock(
-            path / "writer.lock", timeout=0, mode=0o600, thread_local=False, is_singleton=True
-        )
+        self._lock = FileLock(path / "writer.lock", timeout=0, mode=0o600, thread_local=False, is_singleton=True)
 
     @classmethod
     def create(cls, path: Path, photo_root: Path) -> Self:
@@ -52,11 +50,7 @@ class Ledger:
             raise BadInput(
                 f"The ledger {path} would lie inside the photo root {photo_root}, which is never written to."
             )
-        if (
-            not (path / _RECORD_FILE).exists()
-            and path.exists()
-            and (not path.is_dir() or any(path.iterdir()))
-        ):
+        if not (path / _RECORD_FILE).exists() and path.exists() and (not path.is_dir() or any(path.iterdir())):
             raise BadInput(f"{path} is there already and is no ledger; name a new folder.")
         try:
             path.mkdir(mode=0o700, parents=True, exist_ok=True)
@@ -69,9 +63,7 @@ class Ledger:
                 _record.put_settings(ledger._record, {"photo_root": _text(photo_root)})
         elif _path(known) != photo_root:
             ledger.close()
-            raise BadInput(
-                f"The ledger {path} belongs to the photo root {_path(known)}, not to {photo_root}."
-            )
+            raise BadInput(f"The ledger {path} belongs to the photo root {_path(known)}, not to {photo_root}.")
         return ledger
 
     @classmethod

@@ -62,11 +62,7 @@ def put_attributes(record: Database, rows: Mapping[str, Mapping[str, str]]) -> N
         record.execute("DELETE FROM attribute")
         record.execute_many(
             "INSERT INTO attribute VALUES (?, ?, ?)",
-            (
-                (photo, attribute, value)
-                for photo, known in rows.items()
-                for attribute, value in known.items()
-            ),
+            ((photo, attribute, value) for photo, known in rows.items() for attribute, value in known.items()),
         )
 
 
