@@ -1,0 +1,58 @@
+"""The aligned crop: five landmarks brought onto five fixed points."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+from PIL import Image
+
+from curator.domain import Pixels
+from curator.embedders.landmarks import similarity_fit
+
+_TEMPLATE = np.array(
+    [
+        (0.8595674595992, 0.2134981538014),
+        (0.6460604764104, 0.2289674387677),
+        (0.1205750620789, 0.2137274526848),
+        (0.3340850613712, 0.2290642403242),
+        (0.4901123135679, 0.6277975316475),
+    ]
+)
+_PADDING = 0.25
+"""The unit square of the template is set into a crop with this margin on each side."""
+
+
+def crop_transform(landmarks: NDArray[np.float64], size: int = 150) -> NDArray[np.float64]:
+    """The 2 x 3 similarity from crop pixels to photo pixels, pixel centres at whole numbers."""
+    template = (_TEMPLATE + _PADDING) / (1 + 2 * _PADDING) * size
+    return similarity_fit(template, np.asarray(landmarks, dtype=np.float64))
+
+
+def aligned_crop(rgb: Pixels, landmarks: NDArray[np.float64], size: int = 150) -> Pixels:
+    """The (size, size, 3) uint8 crop of an (h, w, 3) photo; black outside the photo, bicubic between pixels."""
+    transform = crop_transform(landmarks, size)
+    scale = float(np.hypot(transform[0, 0], transform[1, 0]))
+    height, width = rgb.shape[:2]
+    corners = np.array([[0, 0, 1], [size, 0, 1], [0, size, 1], [size, size, 1]]) @ transform.T
+    margin = 4.0 * max(1.0, scale)
+    left, top = np.maximum(np.floor(corners.min(axis=0) - margin), 0).astype(int)
+    right, bottom = np.minimum(np.ceil(corners.max(axis=0) + margin), [width, height]).astype(int)
+    if right <= left or bottom <= top:
+        return np.zeros((size, size, 3), dtype=np.uint8)
+    part = Image.fromarray(rgb[top:bottom, left:right])
+    # Bicubic reads four pixels a side whatever the scale: where the crop shrinks the photo, average first.
+    factor = max(1, int(scale))
+    if factor > 1:
+        part = part.reduce(factor)
+    to_part = transform.copy()
+    # Pillow's pixel centres lie at halves.
+    to_part[:, 2] += 0.5 - 0.5 * (transform[:, 0] + transform[:, 1]) - (left, top)
+    to_part /= factor
+    crop = part.transform((size, size), Image.Transform.AFFINE, to_part.ravel().tolist(), Image.Resampling.BICUBIC)
+    return np.asarray(crop)
+
+
+def eye_distance(landmarks: NDArray[np.float64]) -> float:
+    """Pixels between the centres of the two eyes, each the middle of its corners."""
+    points = np.asarray(landmarks, dtype=np.float64)
+    return float(np.linalg.norm(points[0:2].mean(axis=0) - points[2:4].mean(axis=0)))

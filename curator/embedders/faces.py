@@ -1,0 +1,135 @@
+"""Finding faces: the detector over a pyramid scanned from its smallest level up, then five landmarks a face."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from PIL import Image
+
+from curator.domain import Pixels
+from curator.embedders import building, landmarks
+from curator.embedders.alignment import aligned_crop, eye_distance
+from curator.embedders.session import open_built
+
+_WINDOW = 80.0
+"""Side in level pixels of the face that the detector answers to."""
+_STRIDE, _FIRST = 8.0, 14.0
+"""Output cell (x, y) is centred on level pixel (8x + 14, 8y + 14)."""
+_LARGEST_FACE = 0.95
+"""The first level looks for faces of this share of the photo's shorter side."""
+_LEVEL_STEP = 1.3
+"""Each level against the one before. The detector answers well to faces of 62 to 105 px, so levels may lie apart."""
+_SMALLEST_FACE = 1.0 / 12.0
+"""Share of the photo's longer side below which faces are not looked for: it bounds the work on large photos."""
+_MOST_ENLARGED = 2.6
+"""Small photos are enlarged no further: there is nothing more in them."""
+_LEVELS_AFTER_FIND = 1
+"""One more level after the first find: it settles the size of the face and catches a companion somewhat smaller."""
+_OVERLAP = 0.3
+
+__all__ = ["Face", "FaceFinder", "aligned_crop", "eye_distance", "level_sizes"]
+
+Box = tuple[float, float, float, float]
+
+
+@dataclass(frozen=True, slots=True)
+class Face:
+    """One face of a photo, in its pixels, pixel centres at whole numbers."""
+
+    box: Box
+    """left, top, width, height."""
+    score: float
+    """The detector's answer; above 0."""
+    landmarks: NDArray[np.float64]
+    """(5, 2), x and y; the order is told in `landmarks`."""
+
+
+class FaceFinder:
+    """Finds the faces of photos, strongest first."""
+
+    def __init__(self, *, threads: int = 1) -> None:
+        """Raises `EnvironmentFailed` where the default models cannot be had."""
+        self._session = open_built(building.detector_path, threads=threads)
+        self._forests = building.forests()
+
+    def find(self, rgb: Pixels) -> list[Face]:
+        """All faces of an (h, w, 3) uint8 photo down to `_SMALLEST_FACE`, if no larger one was found before.
+
+        Scans small levels first, since their work is small and the face of a portrait is large, and ends one level
+        after the first find; no level is scanned twice.
+        """
+        boxes = self.boxes(rgb)
+        if not boxes:
+            return []
+        # The integer mean, as the regressor was trained on.
+        grey = (rgb.sum(axis=2, dtype=np.uint16) // 3).astype(np.uint8)
+        return [Face(box, score, self._landmarks(grey, box)) for box, score in boxes]
+
+    def boxes(self, rgb: Pixels) -> list[tuple[Box, float]]:
+        """The boxes alone: left, top, width, height and score, strongest first."""
+        photo = Image.fromarray(rgb)
+        found: list[tuple[Box, float]] = []
+        left_to_scan = None
+        for size in level_sizes(photo.width, photo.height):
+            # Levels are made from each other downwards by Pillow's own reduction: the gap keeps it quick and clean.
+            level = photo.resize(size, Image.Resampling.BILINEAR, reducing_gap=2.0)
+            found += self._scan(np.asarray(level), photo.width / size[0], photo.height / size[1])
+            if left_to_scan is not None:
+                left_to_scan -= 1
+            elif found:
+                left_to_scan = _LEVELS_AFTER_FIND
+            if left_to_scan == 0:
+                break
+        return _without_overlaps(found)
+
+    def _scan(self, level: Pixels, zoom_x: float, zoom_y: float) -> list[tuple[Box, float]]:
+        values = np.ascontiguousarray(level.transpose(2, 0, 1)[None].astype(np.float32))
+        answer = self._session.run(None, {"input": values})[0][0, 0]
+        rows, columns = np.nonzero(answer > 0)
+        return [
+            (
+                (
+                    (_STRIDE * x + _FIRST - _WINDOW / 2) * zoom_x,
+                    (_STRIDE * y + _FIRST - _WINDOW / 2) * zoom_y,
+                    _WINDOW * zoom_x,
+                    _WINDOW * zoom_y,
+                ),
+                float(answer[y, x]),
+            )
+            for y, x in zip(rows.tolist(), columns.tolist(), strict=True)
+        ]
+
+    def _landmarks(self, grey: Pixels, box: Box) -> NDArray[np.float64]:
+        left, top, width, height = (float(np.floor(value + 0.5)) for value in box)
+        return landmarks.predict(self._forests, grey, (left, top, left + width - 1, top + height - 1))
+
+
+def level_sizes(width: int, height: int) -> list[tuple[int, int]]:
+    """The sizes (width, height) of the pyramid's levels, smallest first."""
+    shorter, longer = min(width, height), max(width, height)
+    scale = _WINDOW / (_LARGEST_FACE * shorter)
+    last = max(scale, min(_WINDOW / (_SMALLEST_FACE * longer), _MOST_ENLARGED))
+    sizes = []
+    while scale <= last * 1.0001:
+        sizes.append((max(1, round(width * scale)), max(1, round(height * scale))))
+        scale *= _LEVEL_STEP
+    return sizes
+
+
+def _without_overlaps(found: list[tuple[Box, float]]) -> list[tuple[Box, float]]:
+    kept: list[tuple[Box, float]] = []
+    for box, score in sorted(found, key=lambda item: (-item[1], item[0])):
+        if all(_overlap(box, other) < _OVERLAP for other, _ in kept):
+            kept.append((box, score))
+    return kept
+
+
+def _overlap(a: Box, b: Box) -> float:
+    """Common area over the smaller area: a face inside a larger box is the same face."""
+    width = min(a[0] + a[2], b[0] + b[2]) - max(a[0], b[0])
+    height = min(a[1] + a[3], b[1] + b[3]) - max(a[1], b[1])
+    if width <= 0 or height <= 0:
+        return 0.0
+    return width * height / min(a[2] * a[3], b[2] * b[3])
