@@ -7,7 +7,7 @@ import io
 import numpy as np
 from PIL import Image
 
-from curator.demo.shapes import Grid, encoded, lens, per_channel, through
+from curator.demo.brush import Grid, encoded, lens, per_channel, through
 from curator.demo.shot import Shot
 from curator.domain import Pixels
 

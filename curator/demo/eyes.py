@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import numpy as np
 
+from curator.demo.brush import Grid, bump, lattice, lay, linear, mix, per_channel, ripple, soft, within
 from curator.demo.head import View
 from curator.demo.person import Person
-from curator.demo.shapes import Grid, bump, lattice, lay, linear, mix, per_channel, ripple, soft, within
 from curator.demo.shot import Shot
 
 
@@ -31,7 +31,7 @@ def _eye(person: Person, shot: Shot, view: View, colour: Grid, gloss: Grid, sign
     lower = 0.62 * shape.eye_height * (1.0 - 0.5 * shot.squint - 0.25 * max(shot.smile, 0)) * arc**0.8 * (1 + 0.15 * t)
     thin = 1.6 * view.step
     inside = soft(dy - upper, thin) * soft(lower - dy, thin) * soft(1.0 - np.abs(t), 0.1)
-    _lids(person, view, paint, dx, dy, t, upper, lower)
+    _lids(person, paint, dx, dy, t, upper)
     ball = linear([206, 198, 190]) * (1.0 - 0.38 * np.abs(t) ** 2)
     ball *= 1.0 - 0.60 * np.exp(-np.square((dy - upper) / 0.045))
     lay(ball, linear([190, 110, 100]), 0.55 * soft(-t - 0.86, 0.16))
@@ -44,7 +44,7 @@ def _eye(person: Person, shot: Shot, view: View, colour: Grid, gloss: Grid, sign
     lay(paint, linear(np.array(person.skin) * 0.50), 0.55 * under)
 
 
-def _lids(person: Person, view: View, paint: Grid, dx: Grid, dy: Grid, t: Grid, upper: Grid, lower: Grid) -> None:
+def _lids(person: Person, paint: Grid, dx: Grid, dy: Grid, t: Grid, upper: Grid) -> None:
     """The crease above the eye, the lid between, the soft line below."""
     shape = person.shape
     skin = np.array(person.skin)

@@ -6,10 +6,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from curator.demo.brush import Grid, lattice, linear, mix, ripple, soft
 from curator.demo.head import DEPTH, View, outline
 from curator.demo.light import Layer
 from curator.demo.person import Person
-from curator.demo.shapes import Grid, lattice, linear, mix, ripple, soft
 
 
 @dataclass(frozen=True)

@@ -6,9 +6,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from curator.demo.brush import Grid, bump, lattice, lay, linear, mix, per_channel, ripple, soft, within
 from curator.demo.person import Person
 from curator.demo.shape import Shape
-from curator.demo.shapes import Grid, bump, lattice, lay, linear, mix, per_channel, ripple, soft, within
 from curator.demo.shot import Shot
 
 Window = tuple[slice, slice]
@@ -108,7 +108,7 @@ def outline(shape: Shape, x: Grid, y: Grid, grow: float = 0.0) -> Grid:
     u = np.abs(x) / ((shape.width + grow) * narrow)
     power = mix(2.6, shape.jaw, soft(v - 0.1, 0.5))
     total = np.exp(power * np.log(u + 1e-9)) + np.exp(power * np.log(np.abs(v) + 1e-9))
-    return np.exp(np.log(total) / power)
+    return np.asarray(np.exp(np.log(total) / power), dtype=np.float64)
 
 
 def nose(shape: Shape, x: Grid, y: Grid) -> Grid:

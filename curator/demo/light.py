@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from curator.demo.shapes import Grid, lay, lens, per_channel, soft, stretch, through, within
+from curator.demo.brush import Grid, lay, lens, per_channel, soft, stretch, through, within
 from curator.demo.shot import Shot
 
 FAR = -2.2
@@ -34,7 +34,7 @@ class Scene:
         self.step = step
         self.sky = backdrop
         self.key = np.zeros_like(backdrop)
-        self.depth = np.full(backdrop.shape[1:], FAR)
+        self.depth: Grid = np.full(self.sky[0].shape, FAR, dtype=np.float64)
         self.towards = _unit(shot.light_x, shot.light_y, 1.0)
         self.half = _unit(*(self.towards + np.array([0.0, 0.0, 1.0])))
         warm = per_channel(1.0 + 0.5 * shot.warmth, 1.0, 1.0 - 0.9 * shot.warmth)
@@ -93,7 +93,7 @@ class Scene:
         around = through(lens(rows, r, wide), height, lens(columns, c, wide))
         smooth = through(stretch(r, rows), around, stretch(c, columns))
         hollow = np.clip(smooth - height, -0.06, 0.35) * soft(self.depth - NEAREST_BACKDROP, 0.4)
-        return 1.0 - 1.7 * hollow
+        return np.asarray(1.0 - 1.7 * hollow, dtype=np.float64)
 
 
 def _unit(x: float, y: float, z: float) -> Grid:

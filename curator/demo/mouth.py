@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import numpy as np
 
+from curator.demo.brush import Grid, bump, filled, lattice, lay, linear, ripple, soft, within
 from curator.demo.head import View
 from curator.demo.person import Person
-from curator.demo.shapes import Grid, bump, filled, lattice, lay, linear, ripple, soft, within
 from curator.demo.shot import Shot
 
 

@@ -7,13 +7,13 @@ from dataclasses import replace
 import numpy as np
 
 from curator.demo.backdrop import backdrop
+from curator.demo.brush import lay, linear, per_channel, soft
 from curator.demo.camera import develop
 from curator.demo.hair import hair_all_round
 from curator.demo.head import look
 from curator.demo.light import Scene
 from curator.demo.person import Person
 from curator.demo.portrait import FINE, neck_and_kit, stand
-from curator.demo.shapes import lay, linear, per_channel, soft
 from curator.demo.shot import Shot
 from curator.demo.wear import draw_glasses
 from curator.domain import Pixels

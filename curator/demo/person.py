@@ -7,8 +7,8 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from curator.demo.brush import Grid
 from curator.demo.shape import Shape, between, draw_shape, spot
-from curator.demo.shapes import Grid
 
 STYLES = ("short", "crop", "parted", "swept", "curls", "long", "bob", "bun", "receding", "bald", "afro", "fringe")
 AGE_BANDS = ("under 23", "23 to 39", "40 to 59", "60 and over")
@@ -21,8 +21,8 @@ _SKIN = np.array(
         [201, 150, 116],
         [171, 118, 85],
         [134, 88, 62],
-        [99, 64, 47],
-        [74, 48, 38],
+        [112, 74, 55],
+        [90, 60, 47],
     ],
     dtype=np.float64,
 )
@@ -86,7 +86,7 @@ def draw_person(rng: np.random.Generator, id: str = "") -> Person:
     return _dress(rng, id, draw_shape(rng, gentle), age, gentle, tone)
 
 
-def draw_people(rng: np.random.Generator, n: int, *, tries: int = 12) -> list[Person]:
+def draw_people(rng: np.random.Generator, n: int, *, tries: int = 60) -> list[Person]:
     """`n` people kept apart in the space of parameters: of `tries` candidates each time, the farthest.
 
     The rule is Mitchell's best candidate (1991), with distances of scaled parameters and looks.
@@ -128,12 +128,12 @@ def _spot(person: Person) -> Grid:
     """The person's place in the space where people are kept apart."""
     looks = np.array(
         [
-            2.4 * person.tone,
+            3.0 * person.tone,
             1.2 * person.age,
             0.9 * person.soft,
             1.0 * person.beard,
             0.8 * person.moustache,
-            0.9 * bool(person.glasses),
+            1.4 * bool(person.glasses),
             *(np.array(person.hair) / 255.0),
         ]
     )

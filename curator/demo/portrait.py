@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from curator.demo.backdrop import backdrop
+from curator.demo.brush import filled, lay, linear, per_channel, soft
 from curator.demo.camera import develop
 from curator.demo.eyes import draw_brows, draw_eyes
 from curator.demo.hair import beard_cover, hair_before, hair_behind
@@ -12,7 +13,6 @@ from curator.demo.head import View, look, outline, relief, skin
 from curator.demo.light import Layer, Scene
 from curator.demo.mouth import draw_mouth, draw_nostrils
 from curator.demo.person import Person
-from curator.demo.shapes import filled, lay, linear, per_channel, soft
 from curator.demo.shot import Shot
 from curator.demo.wear import cap, draw_glasses, kit
 from curator.domain import Pixels

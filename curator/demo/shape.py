@@ -12,7 +12,7 @@ from typing import Any
 
 import numpy as np
 
-from curator.demo.shapes import Grid
+from curator.demo.brush import Grid
 
 
 def _within(low: float, high: float, weight: float = 1.0) -> Any:
@@ -36,27 +36,27 @@ class Shape:
     chin_out: float = _within(0.02, 0.15)
     chin_width: float = _within(0.16, 0.36)
     brow_ridge: float = _within(0.0, 0.10)
-    eye_gap: float = _within(0.38, 0.51, 1.5)
+    eye_gap: float = _within(0.365, 0.525, 1.6)
     eye_width: float = _within(0.185, 0.265)
     eye_height: float = _within(0.068, 0.136, 1.4)
-    eye_slant: float = _within(-0.16, 0.22)
+    eye_slant: float = _within(-0.22, 0.30, 1.8)
     eye_depth: float = _within(0.03, 0.20)
     lid_fold: float = _within(0.02, 0.12)
     eye_y: float = _within(-0.04, 0.04)
-    brow_y: float = _within(0.20, 0.37, 1.3)
-    brow_thick: float = _within(0.025, 0.085)
+    brow_y: float = _within(0.19, 0.40, 1.4)
+    brow_thick: float = _within(0.022, 0.095, 1.4)
     brow_length: float = _within(0.24, 0.36)
-    brow_arch: float = _within(0.0, 0.10)
+    brow_arch: float = _within(0.0, 0.12, 1.2)
     brow_tilt: float = _within(-0.22, 0.22)
-    nose_length: float = _within(0.50, 0.80)
-    nose_width: float = _within(0.17, 0.33, 1.5)
+    nose_length: float = _within(0.48, 0.84, 2.0)
+    nose_width: float = _within(0.16, 0.36, 1.3)
     bridge_width: float = _within(0.07, 0.15)
     bridge_height: float = _within(0.02, 0.20)
     nose_out: float = _within(0.26, 0.46)
     nose_tip: float = _within(0.0, 0.14)
     nostrils: float = _within(0.0, 1.0)
-    mouth_drop: float = _within(0.24, 0.42)
-    mouth_width: float = _within(0.26, 0.44, 1.4)
+    mouth_drop: float = _within(0.23, 0.45, 1.3)
+    mouth_width: float = _within(0.25, 0.46, 1.3)
     lip_upper: float = _within(0.030, 0.105)
     lip_lower: float = _within(0.05, 0.14)
     lip_bow: float = _within(0.0, 1.0)
@@ -77,8 +77,9 @@ WEIGHT = np.array([f.metadata["weight"] for f in fields(Shape)])
 
 
 def draw_shape(rng: np.random.Generator, gentle: float) -> Shape:
-    """A shape at random; `gentle` 0..1 softens jaw, brow ridge and neck."""
-    values = LOW + SPAN * rng.uniform(0.0, 1.0, len(LOW))
+    """A shape at random, nearer the ends of the ranges than the middle, so that people differ; `gentle` 0..1
+    softens jaw, brow ridge and neck."""
+    values = LOW + SPAN * rng.beta(0.55, 0.55, len(LOW))
     names = [f.name for f in fields(Shape)]
     at = {name: float(v) for name, v in zip(names, values, strict=True)}
     at["jaw"] -= 0.5 * gentle * max(at["jaw"] - 2.0, 0.0)

@@ -52,13 +52,13 @@ def draw_session(rng: np.random.Generator, club: int) -> Shot:
     side = float(rng.choice([-1.0, 1.0]))
     return Shot(
         scale=float(rng.uniform(52.0, 60.0)),
-        light_x=side * float(rng.uniform(0.1, 0.75)),
+        light_x=side * float(rng.uniform(0.1, 0.6)),
         light_y=-float(rng.uniform(0.2, 0.7)),
         hardness=float(rng.uniform(0.3, 0.8)),
         warmth=float(rng.uniform(-0.10, 0.12)),
         exposure=float(rng.uniform(0.88, 1.14)),
         contrast=float(rng.uniform(0.92, 1.1)),
-        blur=float(rng.uniform(0.42, 0.8)),
+        blur=float(rng.uniform(0.40, 0.65)),
         noise=float(rng.uniform(1.0, 3.5)),
         quality=int(rng.integers(74, 86)),
         backdrop=int(rng.integers(0, 6)),
@@ -67,18 +67,18 @@ def draw_session(rng: np.random.Generator, club: int) -> Shot:
     )
 
 
-def draw_shot(rng: np.random.Generator, day: Shot, *, caps: float = 0.06) -> Shot:
+def draw_shot(rng: np.random.Generator, day: Shot, *, caps: float = 0.02) -> Shot:
     """One photo taken on a day."""
     return replace(
         day,
         scale=day.scale * float(rng.uniform(0.94, 1.06)),
         left=float(rng.normal(0.0, 6.0)),
         top=float(rng.normal(0.0, 5.0)),
-        yaw=float(np.clip(rng.normal(0.0, 0.11), -0.28, 0.28)),
-        pitch=float(np.clip(rng.normal(0.0, 0.06), -0.14, 0.14)),
+        yaw=float(np.clip(rng.normal(0.0, 0.085), -0.24, 0.24)),
+        pitch=float(np.clip(rng.normal(0.0, 0.045), -0.12, 0.12)),
         roll=float(np.clip(rng.normal(0.0, 0.05), -0.14, 0.14)),
         smile=float(np.clip(rng.normal(0.25, 0.3), -0.15, 1.0)),
-        open=float(max(0.0, rng.normal(-0.35, 0.5))),
+        open=float(max(0.0, rng.normal(-0.4, 0.4))),
         squint=float(np.clip(rng.normal(0.05, 0.12), -0.15, 0.4)),
         brow=float(rng.normal(0.0, 0.02)),
         gaze=float(rng.normal(0.0, 0.25)),

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 import numpy as np
 
+from curator.demo.brush import Grid, filled, lattice, lay, linear, ripple, soft, within
 from curator.demo.clubs import CLUBS
 from curator.demo.head import DEPTH, View
 from curator.demo.light import Layer
 from curator.demo.person import Person
-from curator.demo.shapes import Grid, filled, lattice, lay, linear, ripple, soft, within
 from curator.demo.shot import Shot
 
 

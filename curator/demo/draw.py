@@ -1,0 +1,70 @@
+"""Write a drawn set to disk: the only file of the drawing that touches it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Iterator
+from concurrent.futures import ProcessPoolExecutor
+from pathlib import Path
+
+from curator.demo.answers import AnswerSheet, sheet_text
+from curator.demo.faults import Faults
+from curator.demo.job import Job, draw_photo
+from curator.demo.plan import PEOPLE, PHOTOS_EACH, SEED, SIBLINGS, Plan, plan_demo
+from curator.errors import BadInput, EnvironmentFailed
+
+PHOTOS, SHEET, ATTRIBUTES = "photos", "answer_sheet.json", "attributes.csv"
+
+
+def draw_demo(
+    target: Path,
+    seed: int = SEED,
+    people: int = PEOPLE,
+    *,
+    photos_each: float = PHOTOS_EACH,
+    faults: Faults | None = None,
+    siblings: int = SIBLINGS,
+    workers: int = 1,
+    drawn: Callable[[int], None] | None = None,
+) -> AnswerSheet:
+    """Draw a set into `target` (new or empty): photos/, photos/attributes.csv and answer_sheet.json.
+
+    `drawn` is called with the number of photos finished since its last call; what it raises stops the drawing.
+    Raises BadInput where `target` holds anything, EnvironmentFailed where it cannot be written.
+    """
+    if people < 2 or not 0 <= siblings <= people // 2 or photos_each < 2 or workers < 1:
+        raise BadInput("a drawn set needs 2 people or more, 2 photos each, and no more siblings than half of them")
+    if target.exists() and (not target.is_dir() or any(target.iterdir())):
+        raise BadInput(f"{target} is not an empty folder: the demo set is drawn into a new one")
+    plan = plan_demo(seed, people=people, photos_each=photos_each, faults=faults, siblings=siblings)
+    try:
+        _write(target, plan, workers, drawn)
+    except OSError as error:
+        raise EnvironmentFailed(f"cannot write the demo set to {target}: {error.strerror}") from error
+    return plan.sheet
+
+
+def _write(target: Path, plan: Plan, workers: int, drawn: Callable[[int], None] | None) -> None:
+    photos = target / PHOTOS
+    photos.mkdir(parents=True, mode=0o700, exist_ok=True)
+    for folder in sorted({path.rpartition("/")[0] for path in plan.jobs}):
+        (photos / folder).mkdir(mode=0o700)
+    for path, data in zip(plan.jobs, _files(plan.jobs.values(), workers), strict=True):
+        _private(photos / path, data)
+        if drawn is not None:
+            drawn(1)
+    _private(photos / ATTRIBUTES, plan.attributes.encode())
+    _private(target / SHEET, sheet_text(plan.sheet).encode())
+
+
+def _files(jobs: Iterable[Job], workers: int) -> Iterator[bytes]:
+    """The photos' bytes, in order."""
+    if workers == 1:
+        yield from map(draw_photo, jobs)
+        return
+    with ProcessPoolExecutor(workers) as pool:
+        yield from pool.map(draw_photo, jobs, chunksize=8)
+
+
+def _private(path: Path, data: bytes) -> None:
+    path.touch(mode=0o600)
+    path.write_bytes(data)
