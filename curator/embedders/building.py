@@ -57,7 +57,7 @@ def forests() -> landmarks.Forests:
     """The landmark regressor. Raises `EnvironmentFailed`."""
     path = _built("landmarks", ".npz", _LANDMARK_FILE, lambda data: _packed(landmarks.parse(data)))
     try:
-        with np.load(path) as arrays:
+        with path.open("rb") as file, np.load(file) as arrays:
             return landmarks.Forests(**{field.name: arrays[field.name] for field in fields(landmarks.Forests)})
     except (OSError, KeyError, ValueError, zipfile.BadZipFile):
         # Parsing the source takes seconds, but a damaged cache must not end the run.

@@ -17,16 +17,17 @@ _WINDOW = 80.0
 """Side in level pixels of the face that the detector answers to."""
 _STRIDE, _FIRST = 8.0, 14.0
 """Output cell (x, y) is centred on level pixel (8x + 14, 8y + 14)."""
-_LARGEST_FACE = 0.95
-"""The first level looks for faces of this share of the photo's shorter side."""
+_LARGEST_FACE = 0.8
+"""The first level looks for faces of this share of the photo's shorter side, and so finds any up to all of it."""
 _LEVEL_STEP = 1.3
 """Each level against the one before. The detector answers well to faces of 62 to 105 px, so levels may lie apart."""
 _SMALLEST_FACE = 1.0 / 12.0
 """Share of the photo's longer side below which faces are not looked for: it bounds the work on large photos."""
 _MOST_ENLARGED = 2.6
 """Small photos are enlarged no further: there is nothing more in them."""
-_LEVELS_AFTER_FIND = 1
-"""One more level after the first find: it settles the size of the face and catches a companion somewhat smaller."""
+_CONVINCING = 0.5
+"""An answer from which the scan ends with its level; weaker ones are kept, but might be a sleeve: it goes on.
+Companions in a photo are mostly of like size, and the level that finds one finds them all."""
 _OVERLAP = 0.3
 
 __all__ = ["Face", "FaceFinder", "aligned_crop", "eye_distance", "level_sizes"]
@@ -57,30 +58,20 @@ class FaceFinder:
     def find(self, rgb: Pixels) -> list[Face]:
         """All faces of an (h, w, 3) uint8 photo down to `_SMALLEST_FACE`, if no larger one was found before.
 
-        Scans small levels first, since their work is small and the face of a portrait is large, and ends one level
-        after the first find; no level is scanned twice.
+        Scans small levels first, since their work is small and the face of a portrait is large, and ends with the
+        first level that finds a convincing one; no level is scanned twice.
         """
-        boxes = self.boxes(rgb)
-        if not boxes:
-            return []
-        # The integer mean, as the regressor was trained on.
-        grey = (rgb.sum(axis=2, dtype=np.uint16) // 3).astype(np.uint8)
-        return [Face(box, score, self._landmarks(grey, box)) for box, score in boxes]
+        return [Face(box, score, self._landmarks(rgb, box)) for box, score in self.boxes(rgb)]
 
     def boxes(self, rgb: Pixels) -> list[tuple[Box, float]]:
         """The boxes alone: left, top, width, height and score, strongest first."""
         photo = Image.fromarray(rgb)
         found: list[tuple[Box, float]] = []
-        left_to_scan = None
         for size in level_sizes(photo.width, photo.height):
-            # Levels are made from each other downwards by Pillow's own reduction: the gap keeps it quick and clean.
+            # Pillow first averages whole blocks of pixels: quick on large photos, and free of aliasing.
             level = photo.resize(size, Image.Resampling.BILINEAR, reducing_gap=2.0)
             found += self._scan(np.asarray(level), photo.width / size[0], photo.height / size[1])
-            if left_to_scan is not None:
-                left_to_scan -= 1
-            elif found:
-                left_to_scan = _LEVELS_AFTER_FIND
-            if left_to_scan == 0:
+            if any(score >= _CONVINCING for _, score in found):
                 break
         return _without_overlaps(found)
 
@@ -101,9 +92,9 @@ class FaceFinder:
             for y, x in zip(rows.tolist(), columns.tolist(), strict=True)
         ]
 
-    def _landmarks(self, grey: Pixels, box: Box) -> NDArray[np.float64]:
+    def _landmarks(self, rgb: Pixels, box: Box) -> NDArray[np.float64]:
         left, top, width, height = (float(np.floor(value + 0.5)) for value in box)
-        return landmarks.predict(self._forests, grey, (left, top, left + width - 1, top + height - 1))
+        return landmarks.predict(self._forests, rgb, (left, top, left + width - 1, top + height - 1))
 
 
 def level_sizes(width: int, height: int) -> list[tuple[int, int]]:

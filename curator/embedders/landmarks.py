@@ -80,27 +80,32 @@ def similarity_fit(source: NDArray[np.float64], target: NDArray[np.float64]) -> 
     return np.array([[turn.real, -turn.imag, shift.real], [turn.imag, turn.real, shift.imag]])
 
 
-def predict(forests: Forests, grey: Pixels, box: tuple[float, float, float, float]) -> NDArray[np.float64]:
+def predict(forests: Forests, rgb: Pixels, box: tuple[float, float, float, float]) -> NDArray[np.float64]:
     """Landmarks (5, 2) in pixels, x and y, for the face in `box` = left, top, right, bottom (both ends included).
 
-    `grey` is (h, w), the integer mean of red, green and blue.
+    `rgb` is (h, w, 3); the regressor reads the integer mean of the three, which is only made where it looks.
     """
     left, top, right, bottom = box
     span, corner = np.array([right - left, bottom - top]), np.array([left, top])
-    height, width = grey.shape
-    shape = forests.initial.copy()
-    every_tree = np.arange(forests.first.shape[1])
+    height, width = rgb.shape[:2]
+    # Single precision, and leaves added in the order of the trees: as where the forests were trained, so that a
+    # pixel on the edge of rounding falls to the same side.
+    shape = forests.initial.astype(np.float32)
+    trees = np.arange(forests.first.shape[1])
     for r in range(forests.first.shape[0]):
-        turn = similarity_fit(forests.initial, shape)[:, :2].astype(np.float32)
+        turn = similarity_fit(forests.initial, shape.astype(np.float64))[:, :2].astype(np.float32)
         places = (forests.offsets[r] @ turn.T + shape[forests.anchors[r]]) * span + corner
         x, y = np.floor(places + 0.5).astype(np.int64).T
         inside = (x >= 0) & (x < width) & (y >= 0) & (y < height)
         values = np.zeros(len(x), dtype=np.float32)
-        values[inside] = grey[y[inside], x[inside]]
-        further = values[forests.first[r]] - values[forests.second[r]] > forests.thresholds[r]
-        node = np.zeros(len(every_tree), dtype=np.int64)
+        values[inside] = rgb[y[inside], x[inside]].sum(axis=1, dtype=np.int64) // 3
+        first, second, thresholds = (part[r].ravel() for part in (forests.first, forests.second, forests.thresholds))
+        node = np.zeros(len(trees), dtype=np.int64)
         for _ in range(_DEPTH):
-            node = 2 * node + np.where(further[every_tree, node], 1, 2)
-        shape += forests.leaves[r][every_tree, node - _SPLITS].sum(axis=0, dtype=np.float64).reshape(-1, 2)
-    landmarks: NDArray[np.float64] = shape * span + corner
+            # Only the four splits on each tree's path are looked at, all trees at once.
+            at = trees * _SPLITS + node
+            node = 2 * node + 1 + (values[first[at]] - values[second[at]] <= thresholds[at])
+        leaves = forests.leaves[r][trees, node - _SPLITS]
+        shape = np.add.reduce(np.concatenate([shape.reshape(1, -1), leaves]), axis=0).reshape(-1, 2)
+    landmarks: NDArray[np.float64] = shape.astype(np.float64) * span + corner
     return landmarks
