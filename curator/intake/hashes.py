@@ -1,0 +1,41 @@
+"""Perceptual hashes, bit for bit those of `imagehash` on the same pixels, from one grey conversion.
+
+Definitions: DCT hash (`phash`): 32 x 32 grey by Lanczos, two DCTs, the low 8 x 8 against its median. Difference hash
+(`dhash`): 9 x 8 grey, each pixel against its left neighbour. First bit most significant.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+import scipy.fftpack
+from PIL import Image, ImageOps
+
+from curator.domain import Bools
+
+_SIDE = 8
+_OVERSAMPLING = 4
+
+
+def packed(bits: Bools) -> int:
+    """64 bits in row order to one unsigned integer, first bit most significant."""
+    return int.from_bytes(np.packbits(bits.ravel()).tobytes(), "big")
+
+
+def dct_hash(grey: Image.Image) -> int:
+    """64-bit DCT hash of a grey (mode L) picture."""
+    side = _SIDE * _OVERSAMPLING
+    pixels = np.asarray(grey.resize((side, side), Image.Resampling.LANCZOS))
+    # The package imagehash uses, in the same order: a matrix product differs on flat and gradient pictures.
+    low = scipy.fftpack.dct(scipy.fftpack.dct(pixels, axis=0), axis=1)[:_SIDE, :_SIDE]
+    return packed(low > np.median(low))
+
+
+def difference_hash(grey: Image.Image) -> int:
+    """64-bit difference hash of a grey (mode L) picture."""
+    pixels = np.asarray(grey.resize((_SIDE + 1, _SIDE), Image.Resampling.LANCZOS))
+    return packed(pixels[:, 1:] > pixels[:, :-1])
+
+
+def mirror_hash(grey: Image.Image) -> int:
+    """64-bit DCT hash of the mirrored picture."""
+    return dct_hash(ImageOps.mirror(grey))

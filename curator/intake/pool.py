@@ -1,0 +1,97 @@
+"""Worker processes: chunks out, results back in the order in which they are ready; a dying worker costs one chunk."""
+
+from __future__ import annotations
+
+import multiprocessing
+import os
+import signal
+from collections import deque
+from collections.abc import Callable, Iterable, Iterator
+from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wait
+from concurrent.futures.process import BrokenProcessPool
+from dataclasses import replace
+
+from curator.domain import PhotoFile, Reading
+from curator.intake.chunks import Result, Task
+
+DIED = "reading it ended the reading process"
+_AHEAD = 2
+"""Chunks waiting per worker: enough that none is idle, few enough that a stop is quick."""
+_POLL_SECONDS = 0.2
+
+ReadChunk = Callable[[Task], Result]
+
+
+def run(
+    tasks: Iterable[Task], read: ReadChunk, *, workers: int, stop_wanted: Callable[[], bool]
+) -> Iterator[tuple[Result, tuple[str, ...]]]:
+    """Results of all tasks, each with the names of the photos that ended a process. Ends early on `stop_wanted`.
+
+    Photos are always read in processes of their own: a file that crashes a decoder must not take the program along.
+    """
+    waiting = deque(tasks)
+    while waiting and not stop_wanted():
+        broken: list[Task] = []
+        yield from _until_broken(waiting, read, workers, stop_wanted, broken)
+        for task in broken:
+            if stop_wanted():
+                return
+            yield _one_by_one(task, read)
+
+
+def _until_broken(
+    waiting: deque[Task], read: ReadChunk, workers: int, stop_wanted: Callable[[], bool], broken: list[Task]
+) -> Iterator[tuple[Result, tuple[str, ...]]]:
+    pool = _pool(workers)
+    flying: dict[Future[Result], Task] = {}
+    try:
+        while (waiting or flying) and not broken:
+            while waiting and len(flying) < workers * _AHEAD and not stop_wanted():
+                task = waiting.popleft()
+                flying[pool.submit(read, task)] = task
+            done, _ = wait(flying, timeout=_POLL_SECONDS, return_when=FIRST_COMPLETED)
+            for future in done:
+                task = flying.pop(future)
+                try:
+                    yield future.result(), ()
+                except BrokenProcessPool:
+                    broken.append(task)
+            if stop_wanted() and not flying:
+                return
+        broken.extend(flying.values())
+    except BrokenProcessPool:  # from submit: the pool broke between two looks
+        broken.extend([*flying.values(), task])
+    finally:
+        pool.shutdown(wait=False, cancel_futures=True)
+
+
+def _one_by_one(task: Task, read: ReadChunk) -> tuple[Result, tuple[str, ...]]:
+    """A chunk during which a process died, photo by photo, each in reach of its own death alone."""
+    files: list[PhotoFile] = []
+    readings: dict[str, Reading] = {}
+    died: list[str] = []
+    pool = _pool(1)
+    for file in task.files:
+        try:
+            result = pool.submit(read, replace(task, files=(file,))).result()
+        except BrokenProcessPool:
+            pool.shutdown(wait=False)
+            pool = _pool(1)
+            died.append(file.name)
+            result = Result((replace(file, digest=None, why=DIED),), ())
+        files.extend(result.files)
+        readings.update({reading.digest: reading for reading in result.readings})
+    pool.shutdown()
+    return Result(tuple(files), tuple(readings.values())), tuple(died)
+
+
+def _pool(workers: int) -> ProcessPoolExecutor:
+    # Spawned, not forked: sessions and threads of the parent do not survive a fork.
+    return ProcessPoolExecutor(workers, mp_context=multiprocessing.get_context("spawn"), initializer=_settle_in)
+
+
+def _settle_in() -> None:
+    """In each worker: the parent alone answers Ctrl-C, and no library starts threads of its own."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
+    for name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"):
+        os.environ[name] = "1"
