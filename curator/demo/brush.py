@@ -6,6 +6,7 @@ the last bits, which one rounding at the very end removes.
 
 from __future__ import annotations
 
+from functools import lru_cache
 from typing import Any
 
 import numpy as np
@@ -60,13 +61,16 @@ def ripple(values: Grid, u: Grid, v: Grid) -> Grid:
     return np.asarray(top * (1.0 - tv) + low * tv, dtype=np.float64)
 
 
+@lru_cache(maxsize=64)
 def lens(n_in: int, n_out: int, sigma: float) -> Grid:
     """Matrix n_out x n_in that shrinks a line and blurs it by a Gaussian of `sigma` input samples."""
     step = n_in / n_out
     centres = (np.arange(n_out) + 0.5) * step - 0.5
     gap = (np.arange(n_in)[None, :] - centres[:, None]) / sigma
     weights = np.exp(-0.5 * gap * gap)
-    return np.asarray(weights / weights.sum(axis=1, keepdims=True), dtype=np.float64)
+    weights /= weights.sum(axis=1, keepdims=True)
+    weights.flags.writeable = False  # It is shared by all who ask for the same lens.
+    return np.asarray(weights, dtype=np.float64)
 
 
 def stretch(n_in: int, n_out: int) -> Grid:

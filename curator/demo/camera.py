@@ -5,7 +5,7 @@ from __future__ import annotations
 import io
 
 import numpy as np
-from PIL import Image
+from PIL import Image, features
 
 from curator.demo.brush import Grid, encoded, lens, per_channel, through
 from curator.demo.shot import Shot
@@ -25,6 +25,12 @@ def develop(light: Grid, shot: Shot) -> Pixels:
     grain = rng.standard_normal(grey.shape[1:]) * 0.8 + rng.standard_normal(grey.shape) * 0.5
     values = np.clip(np.rint(grey + shot.noise * grain), 0, 255).astype(np.uint8)
     return np.ascontiguousarray(values.transpose(1, 2, 0))
+
+
+def jpeg_library() -> str:
+    """The library that writes JPEGs here, with its version: another one may write other bytes for the same pixels."""
+    turbo = features.version("libjpeg_turbo")
+    return f"libjpeg-turbo {turbo}" if turbo else f"libjpeg {features.version('jpg')}"
 
 
 def jpeg(pixels: Pixels, quality: int) -> bytes:

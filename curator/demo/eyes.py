@@ -32,7 +32,7 @@ def _eye(person: Person, shot: Shot, view: View, colour: Grid, gloss: Grid, sign
     thin = 1.6 * view.step
     inside = soft(dy - upper, thin) * soft(lower - dy, thin) * soft(1.0 - np.abs(t), 0.1)
     _lids(person, paint, dx, dy, t, upper)
-    ball = linear([206, 198, 190]) * (1.0 - 0.38 * np.abs(t) ** 2)
+    ball = linear([206, 198, 190]) * (1.0 - 0.35 * person.tone) * (1.0 - 0.38 * np.abs(t) ** 2)
     ball *= 1.0 - 0.60 * np.exp(-np.square((dy - upper) / 0.045))
     lay(ball, linear([190, 110, 100]), 0.55 * soft(-t - 0.86, 0.16))
     _iris(person, shot, view, ball, x - at[0], y - at[1] + 0.012)

@@ -59,14 +59,25 @@ class Planting:
 
     def whole_members(self, at_least: int) -> list[Member]:
         """Members with a folder without folder faults and at least so many untouched photos, shuffled."""
-        draft = self.draft
-        good = [m for m in draft.members if m.folder and m.folder not in self.mixed and len(self.clean(m)) >= at_least]
-        return [good[int(i)] for i in draft.rng.permutation(len(good))]
+        clean = self._clean_by_folder()
+        good = [
+            m
+            for m in self.draft.members
+            if m.folder and m.folder not in self.mixed and len(clean.get(m.folder, ())) >= at_least
+        ]
+        return [good[int(i)] for i in self.draft.rng.permutation(len(good))]
 
     def clean(self, member: Member) -> list[int]:
         """Places of the member's own photos that bear no fault."""
-        prints = self.draft.prints
-        return [i for i in self.draft.of(member) if prints[i].path not in self.taken and prints[i].member == member]
+        return self._clean_by_folder().get(member.folder, [])
+
+    def _clean_by_folder(self) -> dict[str, list[int]]:
+        """Places of photos that bear no fault and lie in their own rower's folder, by that folder."""
+        clean: dict[str, list[int]] = {}
+        for i, made in enumerate(self.draft.prints):
+            if made.member is not None and made.path not in self.taken and made.folder == made.member.folder:
+                clean.setdefault(made.folder, []).append(i)
+        return clean
 
     def refile(self, place: int, folder: str) -> Print:
         """Move a photo to another folder; it keeps its name."""
@@ -185,7 +196,7 @@ def _poor(planting: Planting, turn: int) -> None:
         elif detail == "far too dark":
             shot = replace(shot, exposure=0.018, noise=3.0)
         else:
-            shot = replace(shot, exposure=9.0)
+            shot = replace(shot, exposure=16.0)
         return replace(old, job=replace(old.job, shot=shot))
 
     _spoil(planting, DoubtKind.POOR_PHOTO, detail, spoilt)

@@ -32,7 +32,9 @@ def draw_mouth(person: Person, shot: Shot, view: View, height: Grid, colour: Gri
     edge = soft(1.0 - np.abs(t), 0.08)
     lips = soft(y - upper, thin + 0.012) * soft(lower - y, thin + 0.012) * edge
     skin = np.array(person.skin)
-    red = linear(np.clip(skin * np.array([0.93, 0.66, 0.66]) + np.array([4, 0, 2]) * person.soft, 0, 255))
+    red = linear(
+        np.clip(skin * (np.array([0.93, 0.66, 0.66]) + 0.12 * person.tone) + np.array([4, 0, 2]) * person.soft, 0, 255)
+    )
     creases = ripple(lattice(np.random.default_rng(person.seed + 7)), x * 40.0, y * 5.0)
     tone = 1.0 + 0.06 * creases - 0.16 * soft(line - y, 0.03)
     lay(within(colour, window), red * tone, (0.62 + 0.3 * person.soft) * lips)

@@ -17,7 +17,7 @@ from curator.demo.shot import Shot
 from curator.demo.wear import cap, draw_glasses, kit
 from curator.domain import Pixels
 
-FINE = 1.25
+FINE = 1.2
 """Drawn pixels per pixel of the photo, along each side."""
 
 
@@ -58,7 +58,7 @@ def _face(person: Person, shot: Shot, whole: View) -> Layer:
     radius = outline(person.shape, view.x, view.y)
     height = relief(person, shot, view, radius)
     colour = skin(person, view)
-    gloss = np.full_like(view.x, 0.09 + 0.05 * person.tone)
+    gloss = np.full_like(view.x, 0.09 + 0.02 * person.tone)
     draw_nostrils(person, view, colour)
     draw_mouth(person, shot, view, height, colour, gloss)
     if shot.beard and (person.beard or person.moustache or person.stubble):

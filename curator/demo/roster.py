@@ -146,8 +146,10 @@ def _attend(draft: Draft, member: Member, n: int) -> None:
 
 
 def _dressed(person: Person, session: Session, shot: Shot) -> Shot:
-    """A few rowers leave off glasses or beard for a season; which ones hangs on the person alone."""
+    """Fit a shot to a rower. A few leave off glasses or beard for a season; which ones hangs on the person."""
     season = SEASONS.index(session.season)
     no_glasses = person.seed % 9 == 0 and season == person.seed % 3
-    no_beard = person.seed % 7 == 0 and season == (person.seed // 3) % 3
-    return replace(shot, glasses=not no_glasses, beard=not no_beard)
+    no_beard = person.seed % 12 == 5 and season == (person.seed // 3) % 3
+    # As a photographer does, expose for the face.
+    exposure = shot.exposure * (0.97 + 0.40 * person.tone)
+    return replace(shot, glasses=not no_glasses, beard=not no_beard, exposure=exposure)

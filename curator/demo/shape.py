@@ -82,6 +82,9 @@ def draw_shape(rng: np.random.Generator, gentle: float) -> Shape:
     values = LOW + SPAN * rng.beta(0.55, 0.55, len(LOW))
     names = [f.name for f in fields(Shape)]
     at = {name: float(v) for name, v in zip(names, values, strict=True)}
+    # A low mouth needs a long chin: faces without room between the two are not found as faces.
+    at["chin"] = max(at["chin"], min(at["nose_length"] + at["mouth_drop"] + 0.46, 1.74))
+    at["mouth_drop"] = min(at["mouth_drop"], max(0.23, at["chin"] - 0.46 - at["nose_length"]))
     at["jaw"] -= 0.5 * gentle * max(at["jaw"] - 2.0, 0.0)
     at["brow_ridge"] *= 1.0 - 0.7 * gentle
     at["neck"] -= 0.10 * gentle

@@ -55,7 +55,7 @@ def cap(person: Person, shot: Shot, whole: View) -> Layer:
     view = whole.crop(whole.near((0.0, -1.05), (1.35, 0.95)))
     club = CLUBS[shot.club]
     x, y = view.x, view.y
-    half, rim = person.shape.width + 0.07, -0.60
+    half, rim = person.shape.width + 0.07, -0.67
     top = person.shape.crown + 0.14
     arch = np.clip(1.0 - np.abs(x / half) ** 2.3, 0.0, 1.0)
     dome = soft(y + (-rim) + (top + rim) * arch**0.45, 2.5 * view.step) * soft(rim + 0.12 * (x / half) ** 2 - y, 0.03)
