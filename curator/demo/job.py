@@ -29,6 +29,10 @@ class Job:
     damage: str = ""
     """One of `DAMAGES`."""
 
+    def __post_init__(self) -> None:
+        if self.subject not in SUBJECTS or self.damage not in DAMAGES:
+            raise ValueError(f"no such subject or damage: {self.subject!r}, {self.damage!r}")
+
 
 def draw_photo(job: Job) -> bytes:
     """The bytes of the photo's file. A pure function: the same job gives the same bytes.

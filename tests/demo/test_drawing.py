@@ -15,7 +15,7 @@ from curator.demo.answers import parse_sheet, read_answer_sheet, sheet_text
 from curator.demo.brush import lattice, ripple
 from curator.demo.draw import draw_demo
 from curator.demo.faults import Faults, faults_at
-from curator.demo.job import draw_photo
+from curator.demo.job import Job, draw_photo
 from curator.demo.person import STYLES, draw_people, draw_person, shape_distances, sibling
 from curator.demo.plan import Plan, plan_demo
 from curator.demo.portrait import portrait
@@ -134,3 +134,10 @@ def test_sheets_survive_the_round_trip_and_others_are_refused(small: Plan, tmp_p
         read_answer_sheet(tmp_path / "s.json")
     with pytest.raises(BadInput, match="cannot read"):
         read_answer_sheet(tmp_path / "none.json")
+
+
+def test_a_job_knows_its_subjects_and_damages() -> None:
+    with pytest.raises(ValueError, match="portrayt"):
+        Job("portrayt", (), Shot())
+    with pytest.raises(ValueError, match="torn"):
+        Job("empty", (), Shot(), damage="torn")
