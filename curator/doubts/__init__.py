@@ -1,0 +1,1 @@
+"""Doubts: label faults and unusable photos, each with a probability."""

@@ -1,0 +1,1 @@
+"""Search with no meaning attached: nearest embeddings, codes within a radius, connected components."""
