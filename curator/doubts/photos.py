@@ -10,7 +10,7 @@ from curator.domain import Doubt, DoubtKind, Readings, Roll
 
 _SURE = 0.99
 _NO_FACE = 0.9
-"""A photo without a found face: the detector misses about one face in a hundred, and faceless photos are rarer still."""
+"""Not surer than this: the detector misses about one face in a hundred."""
 _SEVERAL = 0.9
 
 

@@ -1,0 +1,170 @@
+"""Echoes of a ledger, and two photo roots compared: the only file of this room that touches ledgers."""
+
+from __future__ import annotations
+
+import io
+import tempfile
+from collections.abc import Iterator, Mapping
+from contextlib import contextmanager
+from dataclasses import asdict, dataclass
+from functools import lru_cache
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from PIL import Image, ImageOps
+
+from curator.domain import Change, EchoGroup, EchoLink, Readings, Roll
+from curator.echoes import registration
+from curator.echoes.candidates import Candidates, candidates
+from curator.echoes.groups import group
+from curator.echoes.people import SamePerson, same_people
+from curator.echoes.settlement import Facts, settled_change
+from curator.errors import BadInput
+from curator.intake.step import run as run_intake
+from curator.ledger import Ledger
+from curator.progress import Progress, stop_if_wanted
+
+_VERSION = "echoes-1"
+_PREPARED = 512
+"""Photos kept ready for registration: candidates come sorted, so that each is needed several times in a row."""
+_TOLD_EVERY = 50
+
+
+def find_echoes(ledger: Ledger, *, progress: Progress) -> tuple[EchoGroup, ...]:
+    """All groups of echoes. Kept in the ledger until the roll, the verdicts or the split change."""
+    split = ledger.split()
+    split_of = split[0].split_of if split else None
+    key = f"{_VERSION} {ledger.state()}"
+    known = ledger.finding("echo-links", key)
+    roll = ledger.roll()
+    readings = ledger.readings(roll)
+    if known is None:
+        links = _links(ledger, roll, readings, candidates(readings, roll.identity_of), progress)
+        with ledger.writing():
+            ledger.put_finding("echo-links", key, [asdict(link) for link in links])
+    else:
+        links = [_from_document(row) for row in known]
+    return group(links, roll, readings, split_of)
+
+
+def _links(ledger: Ledger, roll: Roll, readings: Readings, found: Candidates, progress: Progress) -> list[EchoLink]:
+    progress.begin("bringing like photos over each other", len(found.pairs))
+
+    @lru_cache(_PREPARED)
+    def prepared(i: int, mirrored: bool) -> registration.Prepared:
+        return _prepared(ledger.thumbnails([roll.digests[i]])[roll.digests[i]], mirrored)
+
+    links: dict[tuple[int, int], EchoLink] = {}
+    for number, ((a, b), mirrored) in enumerate(zip(found.pairs.tolist(), found.mirrored.tolist(), strict=True), 1):
+        if number % _TOLD_EVERY == 0:
+            stop_if_wanted(progress)
+            progress.advance(_TOLD_EVERY)
+        if (a, b) in links:
+            continue
+        registered = registration.register(prepared(a, False), prepared(b, mirrored))
+        change = settled_change(_facts(roll, readings, a), _facts(roll, readings, b), registered, mirrored=mirrored)
+        if change is not None:
+            code = readings.mirror[b] if mirrored else readings.dct[b]
+            links[(a, b)] = EchoLink(
+                roll.photos[a],
+                roll.photos[b],
+                change,
+                int(np.bitwise_count(readings.dct[a] ^ code)),
+                1.0 if change == Change.IDENTICAL else round(registered.agreement, 6),
+                mirrored and change != Change.IDENTICAL,
+                tuple(round(float(v), 6) for v in registered.matrix.ravel()),  # type: ignore[arg-type]
+            )
+    return [links[pair] for pair in sorted(links)]
+
+
+def _facts(roll: Roll, readings: Readings, i: int) -> Facts:
+    return Facts(
+        roll.digests[i],
+        int(readings.width[i]),
+        int(readings.height[i]),
+        float(readings.brightness[i]),
+        float(readings.contrast[i]),
+    )
+
+
+def _prepared(thumbnail: bytes, mirrored: bool) -> registration.Prepared:
+    with Image.open(io.BytesIO(thumbnail)) as image:
+        grey: Image.Image = image.convert("L")
+    if mirrored:
+        grey = ImageOps.mirror(grey)
+    sizes = (registration.COARSE, registration.FINE)
+    small, large = (
+        np.asarray(grey.resize((side, side), Image.Resampling.BILINEAR, reducing_gap=2.0), dtype=np.float64)
+        for side in sizes
+    )
+    return registration.prepare(small, large)
+
+
+def _from_document(row: Mapping[str, Any]) -> EchoLink:
+    matrix = tuple(row["matrix"])
+    return EchoLink(**{**row, "change": Change(row["change"]), "matrix": matrix})
+
+
+@dataclass(frozen=True)
+class Comparison:
+    """What two photo roots share. Photos and identities are named relative to their own roots."""
+
+    echoes: tuple[EchoLink, ...]
+    """`a` lies in the first root, `b` in the second."""
+    people: tuple[SamePerson, ...]
+    photos: tuple[int, int]
+    identities: tuple[int, int]
+
+
+def compare(
+    root_a: Path,
+    root_b: Path,
+    *,
+    framing: str | None = None,
+    card: str | None = None,
+    workers: int | None = None,
+    progress: Progress,
+) -> Comparison:
+    """Echoes and same people across two photo roots. What is read of them is kept for the run only."""
+    for root in (root_a, root_b):
+        if not root.is_dir():
+            raise BadInput(f"{root} is no folder of photos.")
+    if root_a.resolve() == root_b.resolve():
+        raise BadInput(f"{root_a} and {root_b} are the same folder.")
+    with (
+        _both(root_a, root_b) as joined,
+        tempfile.TemporaryDirectory(prefix="pairwright-") as folder,
+        Ledger.create(Path(folder) / "ledger", joined) as ledger,
+    ):
+        run_intake(joined, ledger, framing=framing, card=card, workers=workers, progress=progress)
+        roll = ledger.roll()
+        readings = ledger.readings(roll)
+        side = np.array([int(name.startswith("b/")) for name in roll.photos])
+        # To the search the two roots are two identities: what is near across them is all that counts.
+        found = candidates(readings, side)
+        across = side[found.pairs[:, 0]] != side[found.pairs[:, 1]]
+        links = _links(ledger, roll, readings, Candidates(found.pairs[across], found.mirrored[across]), progress)
+        people = same_people(roll, readings)
+    counts = np.bincount(side, minlength=2)
+    second = sum(name.startswith("b/") for name in roll.identities)
+    return Comparison(
+        tuple(_unprefixed(link) for link in links),
+        people,
+        (int(counts[0]), int(counts[1])),
+        (len(roll.identities) - second, second),
+    )
+
+
+@contextmanager
+def _both(root_a: Path, root_b: Path) -> Iterator[Path]:
+    """One root that links to both, so that one intake reads both."""
+    with tempfile.TemporaryDirectory(prefix="pairwright-") as folder:
+        joined = Path(folder)
+        (joined / "a").symlink_to(root_a.resolve(), target_is_directory=True)
+        (joined / "b").symlink_to(root_b.resolve(), target_is_directory=True)
+        yield joined
+
+
+def _unprefixed(link: EchoLink) -> EchoLink:
+    return EchoLink(link.a[2:], link.b[2:], link.change, link.distance, link.agreement, link.mirrored, link.matrix)

@@ -1,0 +1,1 @@
+"""Measures: error rates, intervals, agreement, and what a list can support."""

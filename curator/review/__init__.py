@@ -1,0 +1,1 @@
+"""Review: verdicts in and out, and how far annotators agree."""

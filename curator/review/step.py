@@ -1,0 +1,91 @@
+"""Verdicts of a ledger: the only file of this room that touches it."""
+
+from __future__ import annotations
+
+import unicodedata
+from collections import defaultdict
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+
+from curator.domain import Verdict
+from curator.errors import BadInput
+from curator.ledger import Ledger
+from curator.measures.agreement import cohen_kappa, fleiss_kappa, krippendorff_alpha
+from curator.review.verdict_csv import parse_verdicts
+from curator.verdicts import pair_key, settle
+
+
+@dataclass(frozen=True)
+class PutReport:
+    new: int
+    repeated: int
+
+
+def put_verdicts(ledger: Ledger, path: Path) -> PutReport:
+    """Take in all verdicts of a CSV, or none. Raises `BadInput` with the offending line."""
+    try:
+        text = path.read_text(encoding="utf-8-sig")
+    except OSError as error:
+        raise BadInput(f"The verdicts {path} could not be read: {error.strerror}.") from error
+    except UnicodeDecodeError as error:
+        raise BadInput(f"The verdicts {path} are not UTF-8 text.") from error
+    names = ledger.roll().photos
+    known = {unicodedata.normalize("NFC", name): name for name in names} | {name: name for name in names}
+    verdicts = parse_verdicts(text, str(path), known)
+    with ledger.writing():
+        new = ledger.put_verdicts(verdicts)
+    return PutReport(new, len(verdicts) - new)
+
+
+def get_verdicts(ledger: Ledger) -> list[Verdict]:
+    """All verdicts, in the order in which they came."""
+    return ledger.verdicts()
+
+
+@dataclass(frozen=True)
+class AgreementReport:
+    """Agreement over what two or more annotators answered. None: undefined."""
+
+    annotators: tuple[str, ...]
+    items: int
+    """Pairs and photos answered by two or more."""
+    cohen: float | None
+    """Of the two annotators, where there are just two."""
+    fleiss: float | None
+    """Over the items that all annotators answered, where there are three or more."""
+    krippendorff: float | None
+    conflicts: tuple[tuple[str, str], ...]
+    """Pairs, and photos with an empty second name, on which annotators disagree."""
+
+
+def agreement(ledger: Ledger) -> AgreementReport:
+    """How far annotators agree, each annotator's latest word counting."""
+    verdicts = ledger.verdicts()
+    answers: dict[tuple[str, str], dict[str, str]] = defaultdict(dict)
+    for verdict in verdicts:
+        key = pair_key(verdict.photo_a, verdict.photo_b) if verdict.photo_b else (verdict.photo_a, "")
+        answers[key][verdict.annotator] = verdict.answer.value
+    annotators = tuple(sorted({verdict.annotator for verdict in verdicts}))
+    shared = [said for _, said in sorted(answers.items()) if len(said) >= 2]
+    labels = sorted({label for said in shared for label in said.values()})
+    place = {label: i for i, label in enumerate(labels)}
+    table = np.zeros((len(labels), len(labels)), dtype=np.int64)
+    if len(annotators) == 2:
+        for said in shared:
+            table[place[said[annotators[0]]], place[said[annotators[1]]]] += 1
+    complete = [said for said in shared if len(said) == len(annotators)]
+    counts = np.zeros((len(complete), len(labels)), dtype=np.int64)
+    for row, said in enumerate(complete):
+        for label in said.values():
+            counts[row, place[label]] += 1
+    settled = settle(verdicts)
+    return AgreementReport(
+        annotators=annotators,
+        items=len(shared),
+        cohen=cohen_kappa(table) if len(annotators) == 2 else None,
+        fleiss=fleiss_kappa(counts) if len(annotators) > 2 else None,
+        krippendorff=krippendorff_alpha(shared),
+        conflicts=settled.contested_pairs + tuple((photo, "") for photo in settled.contested_photos),
+    )
