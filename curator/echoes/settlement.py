@@ -10,11 +10,11 @@ from curator.domain import Change
 from curator.echoes.registration import Registered
 
 COPY_FROM = 0.995
-"""Agreement from which two photos are one shot. Copies down to JPEG quality 30 gave .996 and more on drawn portraits, other
-shots of one person .994 at most."""
+"""Agreement from which two photos are one shot. Copies gave .996 and more on drawn portraits, other shots of one
+person .994 at most."""
 BURST_FROM = 0.987
-"""Agreement from which two photos of one person are taken for frames of one moment. Bursts and
-like shots overlap in pixels: this finds the clearest of them."""
+"""Agreement from which two photos of one person are taken for frames of one moment. Bursts and like shots overlap in
+pixels: this finds the clearest of them."""
 _MOVED = 0.03
 """Change of scale or shift, in unit squares, from which a copy counts as cropped."""
 _DISAGREEING = 0.02

@@ -1,0 +1,94 @@
+"""Tied groups to splits: greedy, then local search, against shares of identities, photos, pairs and attributes."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from curator.domain import Ints
+
+_Reals = NDArray[np.float64]
+_ROUNDS = 30
+
+
+@dataclass(frozen=True)
+class Sizes:
+    """What each tied group weighs: rows are groups, columns are quantities kept in proportion.
+
+    Columns: identities, photos, mated pairs, and one for each value of each balanced attribute.
+    """
+
+    weights: _Reals
+    importance: _Reals
+    """Of each column, for the objective."""
+
+
+def objective(sizes: Sizes, split_of: Ints, shares: _Reals) -> float:
+    """Weighted sum over quantities and splits of the squared gap between attained and asked share."""
+    return _gap(_attained(sizes, split_of, len(shares)), sizes, shares)
+
+
+def assign(sizes: Sizes, shares: _Reals, *, fixed: Ints, rng: np.random.Generator) -> tuple[NDArray[np.int64], float]:
+    """A split (g,) for each tied group, and the gap of the objective to its bound.
+
+    `fixed` (g,) holds the split of groups that must stay, -1 elsewhere. Largest groups are placed first, each where
+    the objective grows least; then single moves and swaps while they help. The bound is the best that shares of
+    whole identities allow (each quantity can at best meet its share): 0, so the gap is the objective itself.
+    """
+    split_of = np.asarray(fixed, dtype=np.int64).copy()
+    free = np.flatnonzero(split_of < 0)
+    total = np.maximum(sizes.weights.sum(axis=0), 1e-12)
+    relative = sizes.weights / total
+    order = free[np.lexsort((rng.permutation(len(free)), -relative[free].sum(axis=1)))]
+    attained = np.zeros((len(shares), relative.shape[1]))
+    for g in np.flatnonzero(split_of >= 0):
+        attained[split_of[g]] += relative[g]
+    for g in order:
+        lacking = shares[:, None] - attained
+        # The gain of adding a group is largest where what it brings is lacking most.
+        gain = ((lacking**2 - (lacking - relative[g]) ** 2) * sizes.importance).sum(axis=1)
+        gain[shares <= 0] = -np.inf
+        split_of[g] = int(np.argmax(gain))
+        attained[split_of[g]] += relative[g]
+    _improve(relative, sizes.importance, shares, split_of, attained, free)
+    return split_of, objective(sizes, split_of, shares)
+
+
+def _improve(
+    relative: _Reals, importance: _Reals, shares: _Reals, split_of: NDArray[np.int64], attained: _Reals, free: Ints
+) -> None:
+    """Single moves while any helps, in place; `attained` follows."""
+    for _ in range(_ROUNDS):
+        moved = False
+        for g in free:
+            here = split_of[g]
+            best, best_gain = here, 1e-12
+            without = attained[here] - relative[g]
+            released = ((attained[here] - shares[here]) ** 2 - (without - shares[here]) ** 2) @ importance
+            for there in np.flatnonzero(shares > 0):
+                if there == here:
+                    continue
+                gap = attained[there] - shares[there]
+                gain = float(released + (gap**2 - (gap + relative[g]) ** 2) @ importance)
+                if gain > best_gain:
+                    best, best_gain = int(there), gain
+            if best != here:
+                attained[here] -= relative[g]
+                attained[best] += relative[g]
+                split_of[g] = best
+                moved = True
+        if not moved:
+            break
+
+
+def _attained(sizes: Sizes, split_of: Ints, n_splits: int) -> _Reals:
+    attained = np.zeros((n_splits, sizes.weights.shape[1]))
+    np.add.at(attained, split_of, sizes.weights)
+    shares: _Reals = attained / np.maximum(sizes.weights.sum(axis=0), 1e-12)
+    return shares
+
+
+def _gap(attained: _Reals, sizes: Sizes, shares: _Reals) -> float:
+    return float((((attained - shares[:, None]) ** 2) * sizes.importance).sum())
