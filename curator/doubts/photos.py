@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -12,13 +13,14 @@ _SURE = 0.99
 _NO_FACE = 0.9
 """Not surer than this: the detector misses about one face in a hundred."""
 _SEVERAL = 0.9
+_RAISED_FROM = 0.3
 
 
 @dataclass(frozen=True)
 class Limits:
     """What a good photo keeps to. Each measure is doubted half at its limit, and more beyond it."""
 
-    sharpness: float = 25.0
+    sharpness: float = 15.0
     """Variance of the Laplacian of the 150 px crop."""
     darkest: float = 30.0
     brightest: float = 225.0
@@ -38,20 +40,28 @@ def unusable(roll: Roll, readings: Readings, limits: Limits) -> list[Doubt]:
     """All doubts that concern one photo's usability."""
     found = []
     for i, why in enumerate(readings.why):
-        kind, probability, evidence = DoubtKind.POOR_PHOTO, 0.0, dict[str, object]()
-        if why is not None:
-            kind, probability, evidence = DoubtKind.UNREADABLE_FILE, _SURE, {"why": why}
-        elif readings.faces[i] > 1:
-            kind, probability, evidence = DoubtKind.SEVERAL_FACES, _SEVERAL, {"faces": int(readings.faces[i])}
-        else:
-            probability, measure, value = _poorest(readings, i, limits)
-            evidence = {measure: round(value, 3)}
-            if readings.faces[i] == 0 and probability < 0.5:
-                kind, probability, evidence = DoubtKind.NO_FACE, _NO_FACE, {"faces": 0}
-        if probability >= 0.3:
-            identity = (roll.identities[int(roll.identity_of[i])],)
-            found.append(Doubt(kind, probability, (roll.photos[i],), identity, evidence))
+        identity = (roll.identities[int(roll.identity_of[i])],)
+        for kind, probability, evidence in _doubts_of(readings, i, why, limits):
+            if probability >= _RAISED_FROM:
+                found.append(Doubt(kind, probability, (roll.photos[i],), identity, evidence))
     return found
+
+
+def _doubts_of(
+    readings: Readings, i: int, why: str | None, limits: Limits
+) -> Iterator[tuple[DoubtKind, float, dict[str, object]]]:
+    if why is not None:
+        yield DoubtKind.UNREADABLE_FILE, _SURE, {"why": why}
+        return
+    faces = int(readings.faces[i])
+    if faces > 1:
+        # The measures are those of one of the faces only: they say nothing of the photo.
+        yield DoubtKind.SEVERAL_FACES, _SEVERAL, {"faces": faces}
+        return
+    if faces == 0:
+        yield DoubtKind.NO_FACE, _NO_FACE, {"faces": 0}
+    probability, measure, value = _poorest(readings, i, limits)
+    yield DoubtKind.POOR_PHOTO, probability, {measure: round(value, 3)}
 
 
 def _poorest(readings: Readings, i: int, limits: Limits) -> tuple[float, str, float]:

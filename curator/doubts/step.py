@@ -15,7 +15,7 @@ from curator.pairs.step import load_trust
 from curator.progress import Progress, stop_if_wanted
 from curator.verdicts import settle
 
-_VERSION = "doubts-1"
+_VERSION = "doubts-2"
 OPEN_FROM = 0.5
 """A doubt from this probability on keeps its photo out of editions until a person has settled it."""
 
@@ -34,11 +34,9 @@ def find_doubts(ledger: Ledger, *, progress: Progress) -> tuple[Doubt, ...]:
         progress.begin("looking for label faults", None)
         divisions = two_people_one_folder(roll, trust)
         stop_if_wanted(progress)
-        places = {name: i for i, name in enumerate(roll.identities)}
-        divided = frozenset(places[d.identities[0]] for d in divisions if d.probability >= OPEN_FROM)
         spoilt = {doubt.photos[0] for doubt in doubts if doubt.probability >= OPEN_FROM}
         # A photo that is unusable anyway says nothing about where it belongs.
-        doubts += [doubt for doubt in misfiled(roll, trust, divided) if doubt.photos[0] not in spoilt]
+        doubts += [doubt for doubt in misfiled(roll, trust) if doubt.photos[0] not in spoilt]
         doubts += divisions + one_person_two_folders(roll, trust)
     owner = {photo: roll.identities[i] for photo, i in zip(roll.photos, roll.identity_of.tolist(), strict=True)}
     doubts = with_verdicts(doubts, settle(ledger.verdicts()), owner)

@@ -7,7 +7,7 @@ import numpy as np
 from curator.domain import Ints, MinedPair, PairAnswer, PairKind, PhotoAnswer, Readings, Roll
 from curator.errors import BadInput
 from curator.ledger import Ledger
-from curator.pairs.mining import Mined, hard_mated, hard_non_mated, semi_hard
+from curator.pairs.mining import Mined, hard_mated, hard_non_mated, hardest_mated, semi_hard
 from curator.pairs.trust import TrustModel, fit_trust
 from curator.progress import Progress, stop_if_wanted
 from curator.verdicts import settle
@@ -76,9 +76,7 @@ def _mine(kind: PairKind, readings: Readings, roll: Roll, photos: Ints, limit: i
         return hard_mated(readings.embeddings, photos, roll.identity_of, limit)
     if kind == PairKind.HARD_NON_MATED:
         return hard_non_mated(readings.embeddings, photos, roll.identity_of, limit)
-    i, _, similarity = hard_mated(readings.embeddings, photos, roll.identity_of, len(photos) * len(photos))
-    hardest = np.full(len(roll.identities), np.nan)
-    np.fmin.at(hardest, roll.identity_of[i], similarity)
+    hardest = hardest_mated(readings.embeddings, photos, roll.identity_of, len(roll.identities))
     pool = hard_non_mated(readings.embeddings, photos, roll.identity_of, limit * _POOL)
     a, b, s = semi_hard(pool, roll.identity_of, hardest, _MARGIN)
     return a[:limit], b[:limit], s[:limit]

@@ -11,12 +11,14 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 from sklearn.linear_model import LogisticRegression
 
 from curator.domain import Bools, Ints
+from curator.pairs.folders import Division, Normals, divisions, fit_folders, near_folders, share_twice, to_own_part
 from curator.pairs.similarity import Centres, among_groups, centres, to_groups, to_own
 
 _Reals = NDArray[np.float64]
@@ -24,8 +26,6 @@ _Reals = NDArray[np.float64]
 RIGHTLY_FILED = 0.97
 """Prior share of photos filed under the right identity: between the label noise of small curated sets and of sets
 gathered from the web (common practice: some per cent)."""
-ONE_PERSON_TWICE = 0.02
-"""Prior share of identities that are a second folder of another."""
 SAID = 0.99
 """Trust in what a person said: annotators err too (common practice: about one in a hundred)."""
 _MOST_EVIDENCE = 12.0
@@ -79,14 +79,34 @@ class TrustModel:
     nearest_similarity: _Reals
     core: Centres
     photo_fit: Logistic
-    group_fit: Logistic
+    group_fit: Normals
+    twice: float
+    """Estimated share of identities that are a second folder of another."""
+    near: Ints
+    """Pairs (m, 2) of identities: each with its few most similar others."""
+    divisions: Mapping[int, Division]
+    """Identity to its photos in two parts, and how likely these are two people."""
     embeddings: NDArray[np.float32]
     pair_answers: Mapping[tuple[int, int], bool]
     """Pairs (smaller place first) of which a person said same (True) or different (False)."""
 
     def mated(self, i: Ints, j: Ints) -> _Reals:
         """Trust in 'same person' for photos `i` and `j` of one identity, place by place."""
-        return self._said(i, j, self.belonging[i] * self.belonging[j], mated=True)
+        trust = self.belonging[i] * self.belonging[j]
+        part, doubled = self._parts
+        across = (part[i] != part[j]) & (part[i] >= 0) & (part[j] >= 0)
+        trust[across] *= 1 - doubled[self.identity_of[i[across]]]
+        return self._said(i, j, trust, mated=True)
+
+    @cached_property
+    def _parts(self) -> tuple[Ints, _Reals]:
+        """Along the roll the part of its folder's division (-1: none); by identity how likely it holds two people."""
+        part = np.full(len(self.identity_of), -1, dtype=np.int8)
+        doubled = np.zeros(len(self.core.counts))
+        for identity, division in self.divisions.items():
+            part[division.first], part[division.second] = 0, 1
+            doubled[identity] = division.probability
+        return part, doubled
 
     def non_mated(self, i: Ints, j: Ints) -> _Reals:
         """Trust in 'different people' for photos `i` and `j` of two identities, place by place."""
@@ -105,9 +125,9 @@ class TrustModel:
     def same_person(self, a: Ints, b: Ints) -> _Reals:
         """The probability that two identities are one person, place by place."""
         n = max(2, len(self.core.counts))
-        odds = np.exp(self.group_fit.evidence(among_groups(self.core, a, self.core, b))) * ONE_PERSON_TWICE / (n - 1)
+        odds = np.exp(self.group_fit.evidence(among_groups(self.core, a, self.core, b))) * self.twice / (n - 1)
         known = (self.core.counts[a] > 0) & (self.core.counts[b] > 0)
-        return np.where(known, odds / (1 + odds), ONE_PERSON_TWICE / n)
+        return np.where(known, odds / (1 + odds), self.twice / n)
 
     def _said(self, i: Ints, j: Ints, trust: _Reals, *, mated: bool) -> _Reals:
         if self.pair_answers:
@@ -145,9 +165,17 @@ def fit_trust(
             break
         # The first fit trusts every folder; the second only those photos that sit well in theirs.
         core_of &= (belonging >= 0.5) | np.isnan(own)
+    group_fit = fit_folders(embeddings, identity_of, n_identities, core_of, rng)
+    divided = divisions(embeddings, embedded, identity_of, group_fit)
+    for identity, division in divided.items():
+        if division.probability >= 0.5:
+            # Held against the mean of two people, neither a stray nor a rightly filed photo stands out.
+            by_part = to_own_part(embeddings, embedded, identity_of, identity, division)
+            own = np.where(np.isnan(by_part), own, by_part)
+            belonging = _belonging(own, nearest_similarity, photo_fit, embedded, n_identities)
     for photo, belongs in photo_answers.items():
         belonging[photo] = SAID if belongs else 1 - SAID
-    group_fit = _group_fit(embeddings, identity_of, n_identities, core_of, rng)
+    near = near_folders(core)
     return TrustModel(
         identity_of,
         belonging,
@@ -157,6 +185,9 @@ def fit_trust(
         core,
         photo_fit,
         group_fit,
+        share_twice(core, near, group_fit),
+        near,
+        divided,
         embeddings,
         pair_answers,
     )
@@ -183,28 +214,6 @@ def _photo_fit(
     other = (identity_of[who] + rng.integers(1, n, len(who))) % n
     known = core.counts[other] > 0
     return fit_logistic(same, to_groups(embeddings, who[known], core, other[known]))
-
-
-def _group_fit(
-    embeddings: NDArray[np.float32], identity_of: Ints, n: int, core_of: Bools, rng: np.random.Generator
-) -> Logistic:
-    """Halves of one identity against whole other identities: what two folders of one person would look like."""
-    half = rng.permutation(len(core_of))
-    order = half[np.argsort(identity_of[half], kind="stable")]
-    order = order[core_of[order]]
-    starts = np.searchsorted(identity_of[order], identity_of[order])
-    first = np.zeros(len(core_of), dtype=bool)
-    first[order[(np.arange(len(order)) - starts) % 2 == 0]] = True
-    one = centres(embeddings, identity_of, n, core_of & first)
-    two = centres(embeddings, identity_of, n, core_of & ~first)
-    halves = np.flatnonzero((one.counts > 0) & (two.counts > 0))
-    same = among_groups(one, halves, two, halves)
-    a = np.repeat(halves, _STRANGERS)
-    if n < 2 or len(a) == 0:
-        return Logistic(*_FALLBACK)
-    b = (a + rng.integers(1, n, len(a))) % n
-    known = two.counts[b] > 0
-    return fit_logistic(same, among_groups(one, a[known], two, b[known]))
 
 
 def _nearest_identity(
