@@ -1,0 +1,60 @@
+"""The edition as a BagIt bag (RFC 8493): written beside its final name, renamed when whole."""
+
+from __future__ import annotations
+
+import hashlib
+import os
+import shutil
+from collections.abc import Mapping
+from pathlib import Path
+
+from curator.errors import BadInput, EnvironmentFailed
+
+
+def check_target(out: Path) -> None:
+    """Raise `BadInput` where `out` is taken."""
+    if out.exists() and (not out.is_dir() or any(out.iterdir())):
+        raise BadInput(f"{out} is there already; name a new folder for the edition.")
+
+
+def write_bag(out: Path, payload: Mapping[str, bytes], info: Mapping[str, str]) -> str:
+    """Write `payload` (path below data/ to bytes) as a bag at `out`. Returns the digest of its payload manifest.
+
+    Nothing is seen at `out` before everything is on disk. Raises `BadInput`, `EnvironmentFailed`.
+    """
+    check_target(out)
+    beside = out.with_name(f".{out.name}.{os.getpid()}.partial")
+    files = {f"data/{name}": data for name, data in payload.items()}
+    manifest = _manifest(files)
+    octets = sum(len(data) for data in files.values())
+    told = {**info, "Payload-Oxum": f"{octets}.{len(files)}"}
+    tags = {
+        "bagit.txt": b"BagIt-Version: 1.0\nTag-File-Character-Encoding: UTF-8\n",
+        "bag-info.txt": "".join(f"{key}: {value}\n" for key, value in sorted(told.items())).encode(),
+        "manifest-sha256.txt": manifest,
+    }
+    files |= tags | {"tagmanifest-sha256.txt": _manifest(tags)}
+    try:
+        beside.mkdir(mode=0o700, parents=True)
+        for name, data in files.items():
+            _write(beside / name, data)
+        if out.exists():
+            out.rmdir()
+        beside.rename(out)
+    except OSError as error:
+        raise EnvironmentFailed(f"The edition could not be written to {out}: {error.strerror}.") from error
+    finally:
+        shutil.rmtree(beside, ignore_errors=True)
+    return hashlib.sha256(manifest).hexdigest()
+
+
+def _manifest(files: Mapping[str, bytes]) -> bytes:
+    return "".join(f"{hashlib.sha256(data).hexdigest()}  {name}\n" for name, data in sorted(files.items())).encode()
+
+
+def _write(path: Path, data: bytes) -> None:
+    path.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
+    with open(os.open(path, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o600), "wb") as file:  # noqa: PTH123 - private
+        file.write(data)
+        file.flush()
+        os.fsync(file.fileno())
