@@ -5,6 +5,7 @@ from __future__ import annotations
 import unicodedata
 from collections import defaultdict
 from dataclasses import dataclass
+from datetime import datetime
 from pathlib import Path
 
 import numpy as np
@@ -64,7 +65,8 @@ def agreement(ledger: Ledger) -> AgreementReport:
     """How far annotators agree, each annotator's latest word counting."""
     verdicts = ledger.verdicts()
     answers: dict[tuple[str, str], dict[str, str]] = defaultdict(dict)
-    for verdict in verdicts:
+    # By time and not by arrival, as verdicts are settled: a file brought back late may hold an earlier word.
+    for verdict in sorted(verdicts, key=lambda v: (datetime.fromisoformat(v.at), v.answer.value)):
         key = pair_key(verdict.photo_a, verdict.photo_b) if verdict.photo_b else (verdict.photo_a, "")
         answers[key][verdict.annotator] = verdict.answer.value
     annotators = tuple(sorted({verdict.annotator for verdict in verdicts}))
