@@ -1,0 +1,1 @@
+"""The command line: thin. Parses, calls one step, prints what came back."""

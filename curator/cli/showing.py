@@ -1,0 +1,107 @@
+"""Progress on stderr, answers on stdout."""
+
+from __future__ import annotations
+
+import json
+import signal
+import sys
+from collections.abc import Iterable, Iterator, Sequence
+from contextlib import contextmanager
+from typing import Any
+
+from rich.console import Console
+from rich.progress import BarColumn, MofNCompleteColumn, ProgressColumn, Task, TextColumn, TimeRemainingColumn
+from rich.progress import Progress as Bars
+from rich.table import Table
+from rich.text import Text
+
+
+class _Rate(ProgressColumn):
+    """Units a second."""
+
+    def render(self, task: Task) -> Text:
+        return Text(f"{task.speed:.0f}/s" if task.speed else "")
+
+
+class Shown:
+    """A `Progress` drawn on stderr; a first Ctrl-C asks for a stop, a second one ends at once."""
+
+    def __init__(self, bars: Bars, console: Console) -> None:
+        self._bars, self._console = bars, console
+        self._task: Any = None
+        self._stop = False
+
+    def begin(self, task: str, total: int | None) -> None:
+        if self._task is not None:
+            self._bars.remove_task(self._task)
+        self._task = self._bars.add_task(task, total=total)
+        if not self._console.is_terminal:
+            self._console.print(f"{task}{f' ({total})' if total else ''}", highlight=False)
+
+    def advance(self, n: int = 1) -> None:
+        self._bars.advance(self._task, n)
+
+    def note(self, message: str) -> None:
+        self._console.print(message, highlight=False, markup=False, soft_wrap=True)
+
+    def stop_wanted(self) -> bool:
+        return self._stop
+
+    def ask_to_stop(self, *_: object) -> None:
+        """A signal handler."""
+        if self._stop:
+            raise KeyboardInterrupt
+        self._stop = True
+        self.note("Stopping after what is in hand; press Ctrl-C again to stop at once.")
+
+
+@contextmanager
+def progress() -> Iterator[Shown]:
+    """Progress for one command."""
+    console = Console(stderr=True)
+    columns = (
+        TextColumn("{task.description}"),
+        BarColumn(),
+        MofNCompleteColumn(),
+        _Rate(),
+        TimeRemainingColumn(),
+    )
+    with Bars(*columns, console=console, transient=True, disable=not console.is_terminal) as bars:
+        shown = Shown(bars, console)
+        before = signal.signal(signal.SIGINT, shown.ask_to_stop)
+        try:
+            yield shown
+        finally:
+            signal.signal(signal.SIGINT, before)
+
+
+def as_json(document: Any) -> None:
+    """One JSON document on stdout."""
+    json.dump(document, sys.stdout, ensure_ascii=False, indent=1)
+    sys.stdout.write("\n")
+
+
+def line(text: str) -> None:
+    """One line on stdout."""
+    Console(soft_wrap=True).print(text, highlight=False, markup=False)
+
+
+def table(title: str, header: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:
+    """A table for people on stdout; numbers to the right."""
+    drawn = Table(title=title, title_justify="left", box=None, pad_edge=False)
+    listed = [[_cell(value) for value in row] for row in rows]
+    original = list(listed)
+    for place, name in enumerate(header):
+        numeric = all(_is_number(row[place]) for row in original) and bool(original)
+        drawn.add_column(name, justify="right" if numeric else "left", overflow="fold")
+    for row in listed:
+        drawn.add_row(*(Text(cell) for cell in row))
+    Console().print(drawn)
+
+
+def _cell(value: Any) -> str:
+    return f"{value:.3f}" if isinstance(value, float) else str(value)
+
+
+def _is_number(cell: str) -> bool:
+    return cell.replace(".", "", 1).replace("-", "", 1).isdigit()

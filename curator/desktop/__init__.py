@@ -1,0 +1,1 @@
+"""The window: thin, and the only room that imports Qt."""
