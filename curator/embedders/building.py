@@ -10,7 +10,6 @@ import importlib.metadata
 import io
 import os
 import tempfile
-import zipfile
 from collections.abc import Callable
 from dataclasses import fields
 from pathlib import Path
@@ -59,9 +58,8 @@ def forests() -> landmarks.Forests:
     try:
         with path.open("rb") as file, np.load(file) as arrays:
             return landmarks.Forests(**{field.name: arrays[field.name] for field in fields(landmarks.Forests)})
-    except (OSError, KeyError, ValueError, zipfile.BadZipFile):
-        # Parsing the source takes seconds, but a damaged cache must not end the run.
-        forget(path)
+    except OSError:
+        # Another process may just be replacing it. Parsing the source takes seconds, but does not end the run.
         return landmarks.parse(_source(_LANDMARK_FILE))
 
 
@@ -73,16 +71,38 @@ def prepare() -> None:
 
 
 def forget(path: Path) -> None:
-    """Drop a damaged file of the cache; the next use builds it again."""
-    path.unlink(missing_ok=True)
+    """Drop a damaged file of the cache; the next use builds it again. Raises `EnvironmentFailed`."""
+    try:
+        path.unlink(missing_ok=True)
+    except OSError as error:
+        raise EnvironmentFailed(f"The damaged model {path} could not be removed: {error.strerror}.") from error
 
 
 def _built(name: str, ending: str, source: str, build: Callable[[bytes], bytes]) -> Path:
-    path = cache_folder() / f"{name}-{_FORMAT}-{_DIGESTS[source][:12]}{ending}"
-    if path.is_file() and path.stat().st_size > 0:
-        return path
-    _write(path, build(_source(source)))
+    """The file of the cache that was built from `source`; its name ends with the digest of what was written.
+
+    Weights damaged on the disk would still load, and silently give other embeddings: so the digest is checked.
+    """
+    folder, stem = cache_folder(), f"{name}-{_FORMAT}-{_DIGESTS[source][:12]}"
+    for path in sorted(folder.glob(f"{stem}-*{ending}")):
+        if _is_whole(path):
+            return path
+        forget(path)
+    data = build(_source(source))
+    path = folder / f"{stem}-{_short_digest(data)}{ending}"
+    _write(path, data)
     return path
+
+
+def _is_whole(path: Path) -> bool:
+    try:
+        return path.stem.endswith(f"-{_short_digest(path.read_bytes())}")
+    except OSError:
+        return False
+
+
+def _short_digest(data: bytes) -> str:
+    return hashlib.sha256(data).hexdigest()[:12]
 
 
 def _source(name: str) -> bytes:
@@ -104,9 +124,16 @@ def _write(path: Path, data: bytes) -> None:
         path.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
         # mkstemp makes the file private and its name unlike that of any other process.
         handle, beside = tempfile.mkstemp(dir=path.parent, prefix=path.name)
-        with os.fdopen(handle, "wb") as file:
-            file.write(data)
-        Path(beside).replace(path)
+        try:
+            with os.fdopen(handle, "wb") as file:
+                file.write(data)
+                file.flush()
+                os.fsync(file.fileno())
+            Path(beside).replace(path)
+        except OSError:
+            # A full disk is no place to leave half a model on.
+            Path(beside).unlink(missing_ok=True)
+            raise
     except OSError as error:
         raise EnvironmentFailed(f"The models could not be written to {path.parent}: {error.strerror}.") from error
 

@@ -25,6 +25,8 @@ _SMALLEST_FACE = 1.0 / 12.0
 """Share of the photo's longer side below which faces are not looked for: it bounds the work on large photos."""
 _MOST_ENLARGED = 2.6
 """Small photos are enlarged no further: there is nothing more in them."""
+_MOST_PIXELS = 1_000_000
+"""No level is larger: only strips a hundred times as long as wide, which hold no face, would ask for more."""
 _CONVINCING = 0.5
 """An answer from which the scan ends with its level; weaker ones are kept, but might be a sleeve: it goes on.
 Companions in a photo are mostly of like size, and the level that finds one finds them all."""
@@ -104,7 +106,10 @@ def level_sizes(width: int, height: int) -> list[tuple[int, int]]:
     last = max(scale, min(_WINDOW / (_SMALLEST_FACE * longer), _MOST_ENLARGED))
     sizes = []
     while scale <= last * 1.0001:
-        sizes.append((max(1, round(width * scale)), max(1, round(height * scale))))
+        size = (max(1, round(width * scale)), max(1, round(height * scale)))
+        if size[0] * size[1] > _MOST_PIXELS:
+            break
+        sizes.append(size)
         scale *= _LEVEL_STEP
     return sizes
 

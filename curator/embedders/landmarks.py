@@ -88,24 +88,36 @@ def predict(forests: Forests, rgb: Pixels, box: tuple[float, float, float, float
     left, top, right, bottom = box
     span, corner = np.array([right - left, bottom - top]), np.array([left, top])
     height, width = rgb.shape[:2]
+    pixels = rgb.reshape(-1, 3)
     # Single precision, and leaves added in the order of the trees: as where the forests were trained, so that a
     # pixel on the edge of rounding falls to the same side.
     shape = forests.initial.astype(np.float32)
     trees = np.arange(forests.first.shape[1])
+    roots = trees * _SPLITS
     for r in range(forests.first.shape[0]):
         turn = similarity_fit(forests.initial, shape.astype(np.float64))[:, :2].astype(np.float32)
         places = (forests.offsets[r] @ turn.T + shape[forests.anchors[r]]) * span + corner
-        x, y = np.floor(places + 0.5).astype(np.int64).T
-        inside = (x >= 0) & (x < width) & (y >= 0) & (y < height)
-        values = np.zeros(len(x), dtype=np.float32)
-        values[inside] = rgb[y[inside], x[inside]].sum(axis=1, dtype=np.int64) // 3
+        values = _grey_values(pixels, np.floor(places + 0.5), width, height)
         first, second, thresholds = (part[r].ravel() for part in (forests.first, forests.second, forests.thresholds))
         node = np.zeros(len(trees), dtype=np.int64)
         for _ in range(_DEPTH):
             # Only the four splits on each tree's path are looked at, all trees at once.
-            at = trees * _SPLITS + node
-            node = 2 * node + 1 + (values[first[at]] - values[second[at]] <= thresholds[at])
-        leaves = forests.leaves[r][trees, node - _SPLITS]
+            at = roots + node
+            node = 2 * node + 1 + (values.take(first.take(at)) - values.take(second.take(at)) <= thresholds.take(at))
+        leaves = forests.leaves[r].reshape(-1, shape.size).take(trees * _LEAVES + node - _SPLITS, axis=0)
         shape = np.add.reduce(np.concatenate([shape.reshape(1, -1), leaves]), axis=0).reshape(-1, 2)
     landmarks: NDArray[np.float64] = shape.astype(np.float64) * span + corner
     return landmarks
+
+
+def _grey_values(pixels: Pixels, places: NDArray[np.float64], width: int, height: int) -> NDArray[np.float32]:
+    """The integer mean of the three channels at whole-numbered (p, 2) places, 0 outside the photo.
+
+    `pixels` are the photo's, row by row, (height * width, 3).
+    """
+    x, y = places[:, 0].astype(np.intp), places[:, 1].astype(np.intp)
+    inside = (x >= 0) & (x < width) & (y >= 0) & (y < height)
+    at = np.where(inside, y * width + x, 0)
+    red, green, blue = pixels.take(at, axis=0).T.astype(np.uint16)
+    grey = (red + green + blue) // 3
+    return np.where(inside, grey, 0).astype(np.float32)

@@ -42,10 +42,12 @@ def open_built(path_of: Any, *, threads: int) -> Any:
 
 
 class Embedder:
-    """One embedder, ready to run. Embeddings are bit for bit the same in any batch, at any place in it.
+    """One embedder, ready to run. Embeddings are bit for bit the same in any company, at any place in it.
 
-    (Tried with the default model: 1, 2, 7, 16 and 32 crops a run, in any order, give identical bits, for every
-    picture of a batch is convolved on its own.)
+    The default model convolves every picture of a batch on its own: batches of 1 to 64 crops, with one thread or
+    two, gave identical bits. A model of the user's need not: one quantized dynamically takes its scales from the
+    whole batch. Such a model therefore gets one picture at a time, which costs a fifth of the speed at most
+    (6.1 against 5.1 ms a crop with a network like the default one).
     """
 
     def __init__(self, card: Card, *, threads: int = 1) -> None:
@@ -110,7 +112,7 @@ class Embedder:
                 f"The model of the embedder card {card.name} wants {inputs[0].type} of shape {shape}, "
                 f"which a {card.layout} input of side {card.size} does not fit."
             )
-        self._one_at_a_time = shape[0] == 1
+        self._one_at_a_time = card.file != BUILTIN_FACE
         name = card.output or names[0]
         self._input, self._output = inputs[0].name, name
         try:

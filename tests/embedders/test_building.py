@@ -1,14 +1,18 @@
 """The cache of built models: made once, made again after damage, made by several processes at once."""
 
+import errno
 import importlib.metadata
+import os
 import stat
 import subprocess
 import sys
 from pathlib import Path
 
+import numpy as np
 import pytest
 
-from curator.embedders import building
+from curator.embedders import building, landmarks
+from curator.embedders.landmarks import Forests
 from curator.embedders.session import open_built
 from curator.errors import EnvironmentFailed
 
@@ -30,20 +34,52 @@ def test_it_is_private_and_kept(own_cache: Path) -> None:
 
 
 @pytest.mark.usefixtures("own_cache")
-def test_a_damaged_model_is_built_again() -> None:
+@pytest.mark.parametrize("at", [1000, 500_000])
+def test_a_damaged_model_is_built_again(at: int) -> None:
     path = building.detector_path()
     whole = path.read_bytes()
-    path.write_bytes(whole[:1000])
+    # One changed weight still loads: only the digest tells.
+    for damaged in (whole[:at], whole[:at] + bytes([whole[at] ^ 0x40]) + whole[at + 1 :]):
+        path.write_bytes(damaged)
+        assert building.detector_path().read_bytes() == whole
+
+
+@pytest.mark.usefixtures("own_cache")
+def test_a_model_damaged_before_it_is_opened_is_built_again(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    path = building.detector_path()
+    gone = tmp_path / "gone.onnx"
+    paths = iter([gone, path])
+    monkeypatch.setattr(building, "detector_path", lambda: next(paths))
     assert open_built(building.detector_path, threads=1).get_inputs()[0].name == "input"
-    assert path.read_bytes() == whole
 
 
-def test_damaged_landmarks_are_read_again(own_cache: Path) -> None:
-    whole = building.forests()
+def test_damaged_landmarks_are_read_again(own_cache: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    whole = Forests(*(np.arange(n, n + 3) for n in range(7)))
+    parsed: list[int] = []
+
+    def parse(data: bytes) -> Forests:
+        parsed.append(len(data))
+        return whole
+
+    monkeypatch.setattr(landmarks, "parse", parse)
+    building.forests()
+    building.forests()
+    assert len(parsed) == 1
     (path,) = own_cache.glob("landmarks*")
-    path.write_bytes(path.read_bytes()[:2000])
+    path.write_bytes(path.read_bytes()[:200])
     again = building.forests()
+    assert len(parsed) == 2
     assert (again.leaves == whole.leaves).all()
+
+
+def test_a_full_disk_leaves_nothing_behind(own_cache: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def full(_handle: int) -> None:
+        raise OSError(errno.ENOSPC, "No space left on device")
+
+    monkeypatch.setattr(os, "fsync", full)
+    with pytest.raises(EnvironmentFailed, match="No space left"):
+        building.detector_path()
+    assert list(own_cache.iterdir()) == []
 
 
 def test_several_processes_may_build_at_once(own_cache: Path) -> None:

@@ -4,7 +4,9 @@ from collections.abc import Callable
 from pathlib import Path
 
 import numpy as np
+import onnx
 import pytest
+from onnx import TensorProto, helper
 
 from curator.embedders.cards import check_framing, load_card
 from curator.embedders.session import Embedder
@@ -46,6 +48,29 @@ def test_a_model_for_single_pictures_takes_batches_too(
 ) -> None:
     mean_model(batch=1)
     assert Embedder(load_card(card_file())).embed(_COLOUR).tolist() == [[10, 20, 30], [40, 0, 0]]
+
+
+def test_a_model_that_looks_at_its_whole_batch_still_embeds_each_picture_alone(
+    tmp_path: Path, card_file: Callable[..., str]
+) -> None:
+    # Dynamic quantization takes one scale from all pictures of a batch.
+    nodes = [
+        helper.make_node("DynamicQuantizeLinear", ["picture"], ["q", "scale", "zero"]),
+        helper.make_node("DequantizeLinear", ["q", "scale", "zero"], ["coarse"]),
+        helper.make_node("GlobalAveragePool", ["coarse"], ["pooled"]),
+        helper.make_node("Flatten", ["pooled"], ["mean"]),
+    ]
+    shapes = {"picture": ["n", 3, 4, 4], "mean": ["n", 3]}
+    inward, outward = (helper.make_tensor_value_info(name, TensorProto.FLOAT, shape) for name, shape in shapes.items())
+    graph = helper.make_graph(nodes, "coarse", [inward], [outward])
+    model = helper.make_model(graph, opset_imports=[helper.make_opsetid("", 18)], ir_version=8)
+    onnx.save(model, tmp_path / "means.onnx")
+    embedder = Embedder(load_card(card_file()))
+    dark_and_bright = np.stack([_COLOUR[0] // 3, _COLOUR[1] * 6])
+    together = embedder.embed(dark_and_bright)
+    alone = np.concatenate([embedder.embed(picture[None]) for picture in dark_and_bright])
+    np.testing.assert_array_equal(together, alone)
+    np.testing.assert_allclose(together[0], dark_and_bright[0, 0, 0], atol=0.05)
 
 
 def test_no_crops_give_no_embeddings(mean_model: Callable[..., Path], card_file: Callable[..., str]) -> None:

@@ -93,7 +93,12 @@ def test_the_pyramid_grows_and_its_work_is_bounded(width: int, height: int) -> N
     areas = [w * h for w, h in sizes]
     assert areas == sorted(areas)
     assert len(set(sizes)) == len(sizes)
-    assert len(sizes) == 1 or areas[-1] <= 1000 * 1000
+    assert all(area <= 1000 * 1000 for area in areas)
+    assert len(sizes) >= 1 or max(width, height) > 100 * min(width, height)
+
+
+def test_a_strip_is_not_scanned() -> None:
+    assert level_sizes(2, 5000) == level_sizes(5000, 2) == []
 
 
 _POINTS = st.lists(st.tuples(st.floats(-50, 50), st.floats(-50, 50)), min_size=3, max_size=8)
