@@ -8,6 +8,8 @@ from dataclasses import replace
 from curator.domain import Doubt, DoubtKind, PairAnswer
 from curator.verdicts import Settled
 
+OPEN_FROM = 0.5
+"""A doubt from this probability on keeps its photo out of editions until a person has settled it."""
 _OF_ONE_PHOTO = {
     DoubtKind.MISFILED_PHOTO,
     DoubtKind.NO_FACE,

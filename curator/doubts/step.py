@@ -9,15 +9,13 @@ from typing import Any
 from curator.domain import Doubt, DoubtKind
 from curator.doubts.labels import misfiled, one_person_two_folders, two_people_one_folder
 from curator.doubts.photos import Limits, unusable
-from curator.doubts.settling import with_verdicts
+from curator.doubts.settling import OPEN_FROM, with_verdicts
 from curator.ledger import Ledger
 from curator.pairs.step import load_trust
 from curator.progress import Progress, stop_if_wanted
 from curator.verdicts import settle
 
 _VERSION = "doubts-2"
-OPEN_FROM = 0.5
-"""A doubt from this probability on keeps its photo out of editions until a person has settled it."""
 
 
 def find_doubts(ledger: Ledger, *, progress: Progress) -> tuple[Doubt, ...]:

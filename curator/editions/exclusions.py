@@ -7,7 +7,7 @@ from collections.abc import Iterable
 import numpy as np
 
 from curator.domain import Bools, Doubt, DoubtKind, PhotoAnswer, Readings, Roll
-from curator.doubts.step import OPEN_FROM
+from curator.doubts.settling import OPEN_FROM
 from curator.verdicts import Settled
 
 _OF_PHOTOS = {
