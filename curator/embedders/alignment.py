@@ -24,7 +24,8 @@ _PADDING = 0.25
 
 def crop_transform(landmarks: NDArray[np.float64], size: int = 150) -> NDArray[np.float64]:
     """The 2 x 3 similarity from crop pixels to photo pixels, pixel centres at whole numbers."""
-    template = (_TEMPLATE + _PADDING) / (1 + 2 * _PADDING) * size
+    # The template's unit square spans the crop from edge to edge, and the first pixel's centre lies half a pixel in.
+    template = (_TEMPLATE + _PADDING) / (1 + 2 * _PADDING) * size - 0.5
     return similarity_fit(template, np.asarray(landmarks, dtype=np.float64))
 
 

@@ -2,6 +2,7 @@
 
 Source: values computed once with the dlib package (its version stands in data/dlib_values.json) on
 data/portrait.png, a drawn portrait, and data/portrait_crop.png, its aligned crop. dlib gives landmarks as whole pixels.
+data/portrait_chip.png is dlib's own aligned crop (`get_face_chip`, 150 pixels, padding .25) by the first of these.
 """
 
 import json
@@ -13,6 +14,7 @@ from PIL import Image
 
 from curator.domain import Pixels
 from curator.embedders import building
+from curator.embedders.alignment import aligned_crop
 from curator.embedders.cards import load_card
 from curator.embedders.faces import FaceFinder
 from curator.embedders.landmarks import predict
@@ -38,6 +40,19 @@ def test_the_landmarks_are_dlibs_to_the_pixel(known: dict[str, list[int]]) -> No
     got = predict(building.forests(), _picture("portrait.png"), (left, top, right, bottom))
     # Rounded as dlib rounds; the distance from the rounding edge is kept so that 1e-3 either way is agreement.
     np.testing.assert_allclose(got, known["landmarks"], atol=0.5 + 1e-3)
+
+
+def test_the_aligned_crop_lies_where_dlibs_does() -> None:
+    landmarks = np.array(_RECORDED["landmarks"][0]["landmarks"], dtype=np.float64)
+    portrait, chip = _picture("portrait.png"), _picture("portrait_chip.png").astype(np.int64)
+
+    def difference(shift: tuple[float, float]) -> float:
+        return float(np.abs(aligned_crop(portrait, landmarks + shift) - chip).mean())
+
+    # Ours is bicubic and dlib's bilinear, so grey values differ a little; a fifth of a pixel off would differ more.
+    here = difference((0.0, 0.0))
+    assert here < 2.5
+    assert all(difference(shift) > here for shift in [(0.2, 0.0), (-0.2, 0.0), (0.0, 0.2), (0.0, -0.2)])
 
 
 def test_the_face_is_found_where_dlib_finds_it() -> None:
