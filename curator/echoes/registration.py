@@ -18,6 +18,9 @@ COARSE, FINE = 32, 96
 _COARSE_STEPS, _FINE_STEPS = 10, 15
 _STILL = 2e-4
 """A step smaller than this (in unit squares) ends the iteration."""
+_PARAMETERS = 6
+_OUTLIER, _LEAST_OUTLIER = 6.0, 0.3
+"""Pixels whose error is beyond so many times the median error, and beyond so many standard deviations, are outliers."""
 _LEAST_COMMON = 0.4
 """Share of the first photo that must be seen in the second."""
 _BLOCKS = 8
@@ -78,21 +81,24 @@ class Template:
     def register(self, other: _Reals, start: _Reals, steps: int) -> tuple[_Reals, float]:
         """The matrix reached from `start`, and the correlation over the common area (-1 where it is too small)."""
         matrix, correlation = start, -1.0
+        trusted = np.ones(self.x.size, dtype=bool)
         for _ in range(steps):
             values, seen = self.sample(other, matrix)
-            if seen.mean() < _LEAST_COMMON:
+            used = seen & trusted
+            if seen.mean() < _LEAST_COMMON or used.sum() < 4 * _PARAMETERS:
                 return matrix, -1.0
-            target = self.grey.ravel()[seen]
-            moved = values[seen]
-            spread, own_spread = moved.std(), target.std()
+            target, moved = self.grey.ravel(), values
+            spread, own_spread = moved[used].std(), target[used].std()
             if spread < 1e-9 or own_spread < 1e-9:
                 return matrix, -1.0
-            normal = (target - target.mean()) / own_spread
-            error = (moved - moved.mean()) / spread - normal
-            correlation = 1 - 0.5 * float((error**2).mean())
-            descent = self.descent[seen] / own_spread
+            error = (moved - moved[used].mean()) / spread - (target - target[used].mean()) / own_spread
+            correlation = 1 - 0.5 * float((error[seen] ** 2).mean())
+            # What was pasted on must not drag the photo along: far outliers have no say in the next step.
+            trusted = np.abs(error) <= max(_LEAST_OUTLIER, _OUTLIER * float(np.median(np.abs(error[seen]))))
+            used = seen & trusted
+            descent = self.descent[used] / own_spread
             try:
-                step = np.linalg.solve(descent.T @ descent, descent.T @ error)
+                step = np.linalg.solve(descent.T @ descent, descent.T @ error[used])
             except np.linalg.LinAlgError:
                 return matrix, correlation
             matrix = _composed(matrix, step)

@@ -1,0 +1,93 @@
+"""Fast searches against slow, obvious twins."""
+
+import numpy as np
+import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from curator.neighbours.codes import collapsed, within
+from curator.neighbours.components import components
+from curator.neighbours.nearest import nearest
+
+_CODES = st.lists(st.integers(0, 2**64 - 1), max_size=30)
+
+
+def _slow_within(a: list[int], b: list[int] | None, radius: int) -> set[tuple[int, int]]:
+    base = a if b is None else b
+    return {
+        (i, j)
+        for i, x in enumerate(a)
+        for j, y in enumerate(base)
+        if (b is not None or i < j) and (x ^ y).bit_count() <= radius
+    }
+
+
+@settings(max_examples=60, deadline=None)
+@given(_CODES, st.lists(st.integers(0, 63), max_size=12), st.integers(0, 11))
+def test_no_pair_within_the_radius_is_missed(codes: list[int], bits: list[int], radius: int) -> None:
+    # Random codes are never near each other: near ones are made by turning some bits.
+    near = codes + [code ^ sum(1 << bit for bit in set(bits)) for code in codes[:5]]
+    pairs, distance = within(np.array(near, dtype=np.uint64), None, radius)
+    assert {tuple(pair) for pair in pairs.tolist()} == _slow_within(near, None, radius)
+    assert all(
+        (near[i] ^ near[j]).bit_count() == d for (i, j), d in zip(pairs.tolist(), distance.tolist(), strict=True)
+    )
+
+
+@settings(max_examples=30, deadline=None)
+@given(_CODES, _CODES, st.integers(0, 11))
+def test_across_two_sets(a: list[int], b: list[int], radius: int) -> None:
+    b = b + [code ^ 5 for code in a[:4]]
+    pairs, _ = within(np.array(a, dtype=np.uint64), np.array(b, dtype=np.uint64), radius)
+    assert {tuple(pair) for pair in pairs.tolist()} == _slow_within(a, b, radius)
+
+
+def test_a_larger_set_against_blocks_of_brute_force() -> None:
+    rng = np.random.default_rng(5)
+    codes = rng.integers(0, 2**64, 4000, dtype=np.uint64)
+    codes[2000:] = codes[:2000] ^ (np.uint64(1) << rng.integers(0, 64, 2000, dtype=np.uint64))
+    pairs, _ = within(codes, None, 8)
+    table = np.bitwise_count(codes[:, None] ^ codes[None]) <= 8
+    assert {tuple(pair) for pair in pairs.tolist()} == set(zip(*np.nonzero(np.triu(table, 1)), strict=True))
+
+
+def test_a_radius_out_of_reach_is_refused() -> None:
+    with pytest.raises(ValueError, match="radius"):
+        within(np.zeros(1, dtype=np.uint64), None, 12)
+
+
+@given(_CODES)
+def test_collapsed_codes_can_be_spread_out_again(codes: list[int]) -> None:
+    array = np.array(codes, dtype=np.uint64)
+    distinct, place = collapsed(array)
+    assert (distinct[place] == array).all()
+    assert len(set(distinct.tolist())) == len(distinct)
+
+
+@settings(max_examples=40, deadline=None)
+@given(st.integers(1, 12), st.integers(1, 12), st.integers(1, 5), st.integers(0, 99))
+def test_nearest_against_sorting_everything(m: int, n: int, k: int, seed: int) -> None:
+    rng = np.random.default_rng(seed)
+    queries, base = rng.normal(size=(m, 4)).astype(np.float32), rng.normal(size=(n, 4)).astype(np.float32)
+    own, groups = rng.integers(0, 3, m), rng.integers(0, 3, n)
+    index, similarity = nearest(queries, base, k, forbidden_query_group=own, base_group=groups)
+    assert index.shape == similarity.shape == (m, k)
+    for row in range(m):
+        allowed = [j for j in range(n) if groups[j] != own[row]]
+        alike = {j: 1 - 0.5 * float(((queries[row] - base[j]) ** 2).sum()) for j in allowed}
+        best = sorted(allowed, key=lambda j: (-alike[j], j))[:k]
+        found = [j for j in index[row].tolist() if j >= 0]
+        assert len(found) == len(best)
+        np.testing.assert_allclose([alike[j] for j in found], [alike[j] for j in best], atol=1e-4)
+        np.testing.assert_allclose(similarity[row, : len(found)], [alike[j] for j in found], atol=1e-4)
+
+
+@given(st.integers(1, 12), st.data())
+def test_components_against_walking_the_graph(n: int, data: st.DataObject) -> None:
+    edges = data.draw(st.lists(st.tuples(st.integers(0, n - 1), st.integers(0, n - 1)), max_size=15))
+    label = list(range(n))
+    for _ in range(n):
+        for a, b in edges:
+            label[a] = label[b] = min(label[a], label[b])
+    first = sorted(set(label))
+    assert components(n, np.array(edges, dtype=np.int64)).tolist() == [first.index(x) for x in label]
