@@ -40,20 +40,25 @@ def walk(root: Path) -> Walk:
     found = Walk()
     seen: set[tuple[int, int]] = set()
     raw_identities: dict[str, set[bytes]] = {}
-    taken: set[str] = set()
+    entries = []
     for raw, status in _entries(root, root, seen, found):
-        folder = raw.rpartition(b"/")[0]
-        if not folder:
+        if b"/" in raw:
+            entries.append((raw, status))
+        else:
             found.skipped["photos outside any identity folder"] += 1
-            continue
+    # Every file whose name is composed already keeps it: of two spellings of one name only the other gives way.
+    taken = {_shown(raw) for raw, _ in entries}
+    for raw, status in entries:
+        folder = raw.rpartition(b"/")[0]
         identity = _composed(folder)
         raw_identities.setdefault(identity, set()).add(folder)
-        name = _composed(raw)
-        if name in taken:
-            # Two files whose names differ only by normalisation: the second keeps its own spelling.
-            found.notes.append(f"Two files are called {name}; they differ only by Unicode normalisation.")
-            name = _shown(raw)
-        taken.add(name)
+        name = _shown(raw)
+        if _composed(raw) != name:
+            if _composed(raw) in taken:
+                found.notes.append(f"Two files are called {_composed(raw)}; they differ only by Unicode normalisation.")
+            else:
+                name = _composed(raw)
+                taken.add(name)
         found.files.append(PhotoFile(raw, name, identity, status.st_size, status.st_mtime_ns))
     for identity, folders in sorted(raw_identities.items()):
         if len(folders) > 1:
