@@ -35,7 +35,8 @@ def write_bag(out: Path, payload: Mapping[str, bytes], info: Mapping[str, str]) 
     }
     files |= tags | {"tagmanifest-sha256.txt": _manifest(tags)}
     try:
-        beside.mkdir(mode=0o700, parents=True)
+        out.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
+        beside.mkdir(mode=0o700)
         for name, data in files.items():
             _write(beside / name, data)
         if out.exists():
@@ -53,7 +54,9 @@ def _manifest(files: Mapping[str, bytes]) -> bytes:
 
 
 def _write(path: Path, data: bytes) -> None:
-    path.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
+    # `parents=True` alone would leave the folders in between open to others.
+    for folder in (path.parent.parent, path.parent):
+        folder.mkdir(mode=0o700, exist_ok=True)
     with open(os.open(path, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o600), "wb") as file:  # noqa: PTH123 - private
         file.write(data)
         file.flush()

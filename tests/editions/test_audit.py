@@ -1,0 +1,124 @@
+"""Planted faults of each kind are found, in lists of any origin."""
+
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+from PIL import Image
+from sklearn.datasets import load_sample_image
+
+from curator.editions.audit import audit_path
+from curator.editions.step import write_edition
+from curator.errors import BadInput
+from curator.ledger import Ledger
+from curator.progress import Silent
+from curator.recipe import parse_recipe
+
+_GOOD = ["a/1.jpg,a/2.jpg,1", "b/1.jpg,b/2.jpg,1", "a/1.jpg,b/1.jpg,0", "a/2.jpg,b/2.jpg,0"]
+
+
+def _csv(path: Path, rows: list[str]) -> Path:
+    path.write_text("\n".join(["photo_a,photo_b,label", *rows]) + "\n")
+    return path
+
+
+def _kinds(path: Path, **options: object) -> set[str]:
+    return {fault.kind for fault in audit_path(path, **options).faults}  # type: ignore[arg-type]
+
+
+def test_a_good_list_is_sound(tmp_path: Path) -> None:
+    report = audit_path(_csv(tmp_path / "pairs.csv", _GOOD))
+    assert report.sound
+    assert report.checked == {"lists": 1, "rows": 4}
+
+
+@pytest.mark.parametrize(
+    ("row", "kind"),
+    [
+        ("a/2.jpg,a/1.jpg,1", "repeated-pair"),
+        ("a/2.jpg,a/1.jpg,0", "contradictory-pair"),
+        ("a/3.jpg,a/3.jpg,1", "self-pair"),
+        ("a/3.jpg,b/3.jpg,1", "mated-across-identities"),
+        ("a/3.jpg,a/4.jpg,0", "non-mated-within-identity"),
+    ],
+)
+def test_planted_rows_are_found(tmp_path: Path, row: str, kind: str) -> None:
+    assert kind in _kinds(_csv(tmp_path / "pairs.csv", [*_GOOD, row]))
+
+
+def test_imbalance(tmp_path: Path) -> None:
+    assert "imbalance" in _kinds(_csv(tmp_path / "pairs.csv", _GOOD[:2]))
+
+
+def test_leaks_between_the_lists_of_a_folder(tmp_path: Path) -> None:
+    _csv(tmp_path / "train.csv", _GOOD)
+    _csv(tmp_path / "test.csv", ["c/1.jpg,c/2.jpg,1", "c/1.jpg,d/1.jpg,0"])
+    assert _kinds(tmp_path) == set()
+    assert _kinds(tmp_path, echoes=[("a/1.jpg", "c/2.jpg")]) == {"leak-echo"}
+    assert _kinds(tmp_path, echoes=[("a/1.jpg", "a/2.jpg")]) == {"trivial-pair"}
+    _csv(tmp_path / "val.csv", ["a/8.jpg,a/9.jpg,1", "e/1.jpg,a/9.jpg,0"])
+    assert _kinds(tmp_path) == {"leak-identity"}
+
+
+def test_leaks_and_losses_seen_from_the_photos_alone(tmp_path: Path) -> None:
+    image = Image.fromarray(load_sample_image("china.jpg"))
+    root = tmp_path / "photos"
+    for name, box in (("a/1.jpg", (0, 0, 300, 300)), ("a/2.jpg", (100, 0, 500, 400)), ("b/1.jpg", (0, 100, 200, 400)),
+                      ("c/1.jpg", (300, 0, 600, 300)), ("c/2.jpg", (200, 200, 600, 400))):  # fmt: skip
+        (root / name).parent.mkdir(parents=True, exist_ok=True)
+        image.crop(box).save(root / name, quality=95)
+    lists = tmp_path / "lists"
+    lists.mkdir()
+    _csv(lists / "train.csv", ["a/1.jpg,a/2.jpg,1", "a/1.jpg,b/1.jpg,0"])
+    _csv(lists / "test.csv", ["c/1.jpg,c/2.jpg,1", "c/1.jpg,d/1.jpg,0"])
+    assert _kinds(lists, photos=root) == {"missing-photo"}
+    (root / "d").mkdir()
+    (root / "d" / "1.jpg").write_bytes((root / "a" / "2.jpg").read_bytes())
+    assert _kinds(lists, photos=root) == {"leak-identical-photo", "leak-equal-hash"}
+    Image.open(root / "a" / "2.jpg").resize((200, 200)).save(root / "d" / "1.jpg", quality=95)
+    assert _kinds(lists, photos=root) == {"leak-equal-hash"}
+
+
+def test_lfw_text(tmp_path: Path) -> None:
+    path = tmp_path / "pairs.txt"
+    path.write_text("2\t1\nann\t1\t2\nann\t1\tben\t1\ncat\t1\t2\ncat\t1\tdan\t1\n")
+    assert audit_path(path).sound
+    path.write_text("2\t1\nann\t1\t2\nann\t1\tben\t1\nann\t1\t3\ncat\t1\tdan\t1\n")
+    assert _kinds(path) == {"leak-fold"}
+    path.write_text("ann\t1\t2\nann\t1\tben\t1\n")
+    with pytest.raises(BadInput, match="lacks the first line"):
+        audit_path(path)
+    path.write_text("1\t2\nann\t1\t2\nann\t1\tben\t1\n")
+    with pytest.raises(BadInput, match="promises"):
+        audit_path(path)
+
+
+@pytest.mark.parametrize(
+    ("text", "words"),
+    [
+        ("photo_a,label\nx,1\n", "lacks the column 'photo_b'"),
+        ("photo_a,photo_b,label\nx,y,yes\n", "neither 1"),
+        ("photo_a,photo_b,label\nx,,1\n", "a photo is missing"),
+    ],
+)
+def test_what_is_no_list_is_refused(tmp_path: Path, text: str, words: str) -> None:
+    (tmp_path / "pairs.csv").write_text(text)
+    with pytest.raises(BadInput, match=words):
+        audit_path(tmp_path / "pairs.csv")
+    with pytest.raises(BadInput, match="does not exist"):
+        audit_path(tmp_path / "gone")
+
+
+def test_an_edition_that_was_touched(made_ledger: Callable[..., Ledger], recipe_text: str, tmp_path: Path) -> None:
+    out = tmp_path / "e"
+    with made_ledger() as ledger:
+        write_edition(ledger, parse_recipe(recipe_text), recipe_text, out, progress=Silent())
+    assert _kinds(out) == set()
+    (out / "data" / "extra.txt").write_text("x")
+    assert _kinds(out) == {"extra-file"}
+    (out / "data" / "extra.txt").unlink()
+    whole = (out / "data" / "verdicts.csv").read_bytes()
+    (out / "data" / "verdicts.csv").write_bytes(whole + b" ")
+    assert _kinds(out) == {"digest-mismatch"}
+    (out / "data" / "verdicts.csv").unlink()
+    assert _kinds(out) == {"missing-file"}
