@@ -11,6 +11,9 @@ from curator.domain import Ints
 
 _Reals = NDArray[np.float64]
 _ROUNDS = 30
+_PARTNERS = 200
+"""Groups with which each is tried for a swap: all of them in small collections."""
+_WORTH_IT = 1e-12
 
 
 @dataclass(frozen=True)
@@ -59,28 +62,63 @@ def assign(sizes: Sizes, shares: _Reals, *, fixed: Ints, rng: np.random.Generato
 def _improve(
     relative: _Reals, importance: _Reals, shares: _Reals, split_of: NDArray[np.int64], attained: _Reals, free: Ints
 ) -> None:
-    """Single moves while any helps, in place; `attained` follows."""
+    """Single moves, then swaps of two groups, while any helps; in place, `attained` follows."""
     for _ in range(_ROUNDS):
         moved = False
         for g in free:
-            here = split_of[g]
-            best, best_gain = here, 1e-12
-            without = attained[here] - relative[g]
-            released = ((attained[here] - shares[here]) ** 2 - (without - shares[here]) ** 2) @ importance
-            for there in np.flatnonzero(shares > 0):
-                if there == here:
-                    continue
-                gap = attained[there] - shares[there]
-                gain = float(released + (gap**2 - (gap + relative[g]) ** 2) @ importance)
-                if gain > best_gain:
-                    best, best_gain = int(there), gain
-            if best != here:
-                attained[here] -= relative[g]
-                attained[best] += relative[g]
-                split_of[g] = best
-                moved = True
+            moved |= _move(int(g), relative, importance, shares, split_of, attained)
+        if not moved:
+            for number, g in enumerate(free):
+                partners = free[number + 1 : number + 1 + _PARTNERS]
+                moved |= _swap(int(g), partners, relative, importance, shares, split_of, attained)
         if not moved:
             break
+
+
+def _move(
+    g: int, relative: _Reals, importance: _Reals, shares: _Reals, split_of: NDArray[np.int64], attained: _Reals
+) -> bool:
+    here = int(split_of[g])
+    gap = attained - shares[:, None]
+    released = (gap[here] ** 2 - (gap[here] - relative[g]) ** 2) @ importance
+    gain = released + (gap**2 - (gap + relative[g]) ** 2) @ importance
+    gain[here] = 0.0
+    gain[shares <= 0] = -np.inf
+    there = int(np.argmax(gain))
+    if gain[there] <= _WORTH_IT:
+        return False
+    attained[here] -= relative[g]
+    attained[there] += relative[g]
+    split_of[g] = there
+    return True
+
+
+def _swap(
+    g: int,
+    partners: Ints,
+    relative: _Reals,
+    importance: _Reals,
+    shares: _Reals,
+    split_of: NDArray[np.int64],
+    attained: _Reals,
+) -> bool:
+    here = int(split_of[g])
+    others = partners[split_of[partners] != here]
+    if len(others) == 0:
+        return False
+    change = relative[others] - relative[g]
+    gap = attained - shares[:, None]
+    theirs = gap[split_of[others]]
+    before = gap[here] ** 2 + theirs**2
+    gain = (before - (gap[here] + change) ** 2 - (theirs - change) ** 2) @ importance
+    best = int(np.argmax(gain))
+    if gain[best] <= _WORTH_IT:
+        return False
+    h, there = int(others[best]), int(split_of[others[best]])
+    attained[here] += change[best]
+    attained[there] -= change[best]
+    split_of[g], split_of[h] = there, here
+    return True
 
 
 def _attained(sizes: Sizes, split_of: Ints, n_splits: int) -> _Reals:
