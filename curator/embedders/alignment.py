@@ -30,7 +30,7 @@ def crop_transform(landmarks: NDArray[np.float64], size: int = 150) -> NDArray[n
 
 
 def aligned_crop(rgb: Pixels, landmarks: NDArray[np.float64], size: int = 150) -> Pixels:
-    """The (size, size, 3) uint8 crop of an (h, w, 3) photo; black outside the photo, bicubic between pixels."""
+    """The (size, size, 3) uint8 crop of an (h, w, 3) photo; black outside the photo, bilinear between pixels."""
     transform = crop_transform(landmarks, size)
     scale = float(np.hypot(transform[0, 0], transform[1, 0]))
     height, width = rgb.shape[:2]
@@ -41,7 +41,7 @@ def aligned_crop(rgb: Pixels, landmarks: NDArray[np.float64], size: int = 150) -
     if right <= left or bottom <= top:
         return np.zeros((size, size, 3), dtype=np.uint8)
     part = Image.fromarray(rgb[top:bottom, left:right])
-    # Bicubic reads four pixels a side whatever the scale: where the crop shrinks the photo, average first.
+    # Bilinear reads two pixels a side whatever the scale: where the crop shrinks the photo, average first.
     factor = max(1, int(scale))
     if factor > 1:
         part = part.reduce(factor)
@@ -49,7 +49,7 @@ def aligned_crop(rgb: Pixels, landmarks: NDArray[np.float64], size: int = 150) -
     # Pillow's pixel centres lie at halves.
     to_part[:, 2] += 0.5 - 0.5 * (transform[:, 0] + transform[:, 1]) - (left, top)
     to_part /= factor
-    crop = part.transform((size, size), Image.Transform.AFFINE, to_part.ravel().tolist(), Image.Resampling.BICUBIC)
+    crop = part.transform((size, size), Image.Transform.AFFINE, to_part.ravel().tolist(), Image.Resampling.BILINEAR)
     return np.asarray(crop)
 
 

@@ -78,8 +78,7 @@ class FaceFinder:
         return _without_overlaps(found)
 
     def _scan(self, level: Pixels, zoom_x: float, zoom_y: float) -> list[tuple[Box, float]]:
-        values = np.ascontiguousarray(level.transpose(2, 0, 1)[None].astype(np.float32))
-        answer = self._session.run(None, {"input": values})[0][0, 0]
+        answer = self._session.run(None, {"input": level[None]})[0][0, 0]
         rows, columns = np.nonzero(answer > 0)
         return [
             (

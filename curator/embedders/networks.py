@@ -50,12 +50,18 @@ class _Graph:
     def pad_end(self, x: str, channels: int = 0, side: int = 0) -> str:
         return self.node("Pad", [x, self.constant(np.array([0, 0, 0, 0, 0, channels, side, side]))])
 
-    def model(self, output: str, in_shape: Sequence[int | str], out_shape: Sequence[int | str]) -> onnx.ModelProto:
+    def model(
+        self,
+        output: str,
+        in_shape: Sequence[int | str],
+        out_shape: Sequence[int | str],
+        in_kind: int = TensorProto.FLOAT,
+    ) -> onnx.ModelProto:
         self.nodes.append(helper.make_node("Identity", [output], ["output"]))
         graph = helper.make_graph(
             self.nodes,
             "pairwright",
-            [helper.make_tensor_value_info("input", TensorProto.FLOAT, in_shape)],
+            [helper.make_tensor_value_info("input", in_kind, in_shape)],
             [helper.make_tensor_value_info("output", TensorProto.FLOAT, out_shape)],
             self.initializers,
         )
@@ -126,12 +132,12 @@ _DETECTOR_LAYERS = (  # channels in, channels out, stride, padding; all 5 x 5
 
 
 def detector(tensors: Sequence[Weights]) -> onnx.ModelProto:
-    """Input (1, 3, h, w) float32 of RGB values 0..255 (the normalisation is folded in); output (1, 1, rows, columns).
+    """Input (1, h, w, 3) uint8, a picture as it is (the normalisation is folded in); output (1, 1, rows, columns).
 
     Output cell (x, y) is centred on input pixel (8x + 14, 8y + 14); its window is 80 x 80; above 0 is a face.
     """
     graph, source = _Graph(), iter(tensors)
-    x = "input"
+    x = graph.node("Transpose", [graph.node("Cast", ["input"], to=TensorProto.FLOAT)], perm=[0, 3, 1, 2])
     for number, (inward, outward, stride, pad) in enumerate(_DETECTOR_LAYERS):
         weights, bias = _folded_batch_norm(source, inward, outward)
         if number == 0:
@@ -141,7 +147,8 @@ def detector(tensors: Sequence[Weights]) -> onnx.ModelProto:
             weights = weights / DIVISOR
         x = graph.relu(graph.conv(x, weights, bias, stride=stride, pad=pad))
     weights, bias = _split_filters(next(source), (1, 45, 9, 9))
-    return graph.model(graph.conv(x, weights, bias, pad=4), [1, 3, "h", "w"], [1, 1, "rows", "columns"])
+    answer = graph.conv(x, weights, bias, pad=4)
+    return graph.model(answer, [1, "h", "w", 3], [1, 1, "rows", "columns"], TensorProto.UINT8)
 
 
 def _folded_batch_norm(source: Iterator[Weights], inward: int, outward: int) -> tuple[Weights, Weights]:

@@ -1,6 +1,6 @@
 """Photos a second for each part of intake and for the whole, against the bare networks over the same inputs.
 
-Run with `python tests/bench/bench_intake.py`. Subjects are the drawn portraits of `demo_faces/`, each four times under
+Run with `python tests/bench/bench_intake.py`. Subjects are the drawn portraits of `demo_faces/`, each eight times under
 digests of its own. The reference is two processes that run only the two onnxruntime sessions, over just the pyramid
 levels and crops that intake gives them. Intake is meant to reach 70 % of it, start of its processes included.
 """
@@ -30,7 +30,7 @@ from curator.ledger import Ledger
 from curator.progress import Silent
 
 _PORTRAITS = Path(__file__).parents[2] / "demo_faces" / "photos"
-_COPIES = 4
+_COPIES = 8
 _PROCESSES = 2
 _SAMPLE = 200
 
@@ -63,7 +63,7 @@ def inputs(photos: Sequence[Pixels]) -> tuple[list[Any], list[Pixels]]:
 
     class Recording(FaceFinder):
         def _scan(self, level: Pixels, zoom_x: float, zoom_y: float) -> Any:
-            levels.append(np.ascontiguousarray(level.transpose(2, 0, 1)[None].astype(np.float32)))
+            levels.append(level[None].copy())
             return super()._scan(level, zoom_x, zoom_y)
 
     finder = Recording()
