@@ -117,7 +117,9 @@ def _sample_pairs(
         if mated:
             a, b = mated_candidates(photos, identity_of, rng)
         else:
-            a, b = non_mated_candidates(photos, identity_of, material.readings.embeddings, half, rng)
+            # Of pairs drawn over all people, one in so many lies within a fold.
+            folds = len(set(fold_of[identity_of[photos]].tolist()))
+            a, b = non_mated_candidates(photos, identity_of, material.readings.embeddings, half * folds, rng)
         # Folds stand alone: a pair must not reach across two.
         apart = np.array([(x, y) not in echo_of for x, y in zip(a.tolist(), b.tolist(), strict=True)], dtype=bool)
         keep = apart & (fold_of[identity_of[a]] == fold_of[identity_of[b]])
