@@ -6,6 +6,7 @@ up with all those changes, and what is found is verified over all 64 bits.
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from itertools import combinations
 
 import numpy as np
@@ -15,8 +16,9 @@ from curator.domain import Codes
 
 _BANDS = 4
 _WIDTH = 64 // _BANDS
-_MASK = np.uint64((1 << _WIDTH) - 1)
 _LARGEST_RADIUS = _BANDS * 3 - 1
+_AT_ONCE = 1 << 22
+"""Pairs verified at once. Real codes crowd in few band values, so that the pairs to verify must not all be held."""
 
 Found = tuple[NDArray[np.int64], NDArray[np.uint8]]
 
@@ -30,19 +32,30 @@ def within(codes_a: Codes, codes_b: Codes | None, radius: int) -> Found:
     if not 0 <= radius <= _LARGEST_RADIUS:
         raise ValueError(f"the radius must lie in 0..{_LARGEST_RADIUS}")
     base = codes_a if codes_b is None else codes_b
-    parts = []
+    parts = [np.zeros((0, 2), dtype=np.int64)]
     for band in range(_BANDS):
-        shift = np.uint64(band * _WIDTH)
-        keys_a, keys_b = (codes_a >> shift) & _MASK, (base >> shift) & _MASK
+        keys_a, keys_b = _band(codes_a, band), _band(base, band)
         order = np.argsort(keys_b, kind="stable")
-        ordered = keys_b[order]
+        begins = np.concatenate([[0], np.cumsum(np.bincount(keys_b, minlength=1 << _WIDTH))])
         for flip in _flips(radius // _BANDS):
-            i, j = _matches(keys_a ^ flip, ordered, order)
-            if codes_b is None:
-                i, j = i[i < j], j[i < j]
-            near = np.bitwise_count(codes_a[i] ^ base[j]) <= radius
-            parts.append(np.stack([i[near], j[near]], axis=1))
-    pairs = np.unique(np.concatenate(parts), axis=0)
+            rows = np.arange(len(codes_a))
+            if codes_b is None and flip:
+                # Of two codes that differ by the flip one lacks its lowest bit: from that one the pair is met, once.
+                rows = np.flatnonzero(keys_a & (flip & -flip) == 0)
+            for place, j in _matches(keys_a[rows] ^ flip, begins, order):
+                i = rows[place]
+                difference = codes_a[i] ^ base[j]
+                near = np.bitwise_count(difference) <= radius
+                if codes_b is None and not flip:
+                    near &= i < j
+                # A pair near in several bands is kept from the first of them.
+                for earlier in range(band):
+                    near[near] = np.bitwise_count(_band(difference[near], earlier)) > radius // _BANDS
+                parts.append(np.stack([i[near], j[near]], axis=1))
+    pairs = np.concatenate(parts)
+    if codes_b is None:
+        pairs.sort(axis=1)
+    pairs = pairs[np.lexsort((pairs[:, 1], pairs[:, 0]))]
     return pairs, np.bitwise_count(codes_a[pairs[:, 0]] ^ base[pairs[:, 1]])
 
 
@@ -52,17 +65,31 @@ def collapsed(codes: Codes) -> tuple[Codes, NDArray[np.int64]]:
     return distinct, place.astype(np.int64)
 
 
-def _flips(most: int) -> list[np.uint64]:
+def _band(codes: Codes, band: int) -> NDArray[np.int64]:
+    return ((codes >> np.uint64(band * _WIDTH)) & np.uint64((1 << _WIDTH) - 1)).astype(np.int64)
+
+
+def _flips(most: int) -> list[int]:
     """All band values with at most `most` bits set: what to change in a band to reach its near codes."""
-    return [
-        np.uint64(sum(1 << bit for bit in bits)) for n in range(most + 1) for bits in combinations(range(_WIDTH), n)
-    ]
+    return [sum(1 << bit for bit in bits) for n in range(most + 1) for bits in combinations(range(_WIDTH), n)]
 
 
-def _matches(keys: Codes, ordered: Codes, order: NDArray[np.int64]) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
-    """All (i, j) with keys[i] equal to the j-th key of the other side, whose sorted keys and order are given."""
-    start, end = np.searchsorted(ordered, keys, "left"), np.searchsorted(ordered, keys, "right")
-    counts = end - start
-    i = np.repeat(np.arange(len(keys)), counts)
-    offset = np.arange(counts.sum()) - np.repeat(np.cumsum(counts) - counts, counts)
-    return i, order[np.repeat(start, counts) + offset]
+def _matches(
+    keys: NDArray[np.int64], begins: NDArray[np.int64], order: NDArray[np.int64]
+) -> Iterator[tuple[NDArray[np.int64], NDArray[np.int64]]]:
+    """All (i, j) with keys[i] equal to the j-th key of the other side, in blocks.
+
+    The other side is given as the `order` that sorts its keys, and where in it each key begins.
+    """
+    start = begins[keys]
+    counts = begins[keys + 1] - start
+    ends = np.cumsum(counts)
+    first = 0
+    while first < len(keys):
+        done = ends[first - 1] if first else 0
+        last = max(first + 1, int(np.searchsorted(ends, done + _AT_ONCE, "right")))
+        block = counts[first:last]
+        i = np.repeat(np.arange(first, last), block)
+        offset = np.arange(len(i)) - np.repeat(ends[first:last] - block - done, block)
+        yield i, order[np.repeat(start[first:last], block) + offset]
+        first = last

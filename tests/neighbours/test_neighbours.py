@@ -5,6 +5,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from curator.neighbours import codes as _codes
 from curator.neighbours.codes import collapsed, within
 from curator.neighbours.components import components
 from curator.neighbours.nearest import nearest
@@ -91,3 +92,15 @@ def test_components_against_walking_the_graph(n: int, data: st.DataObject) -> No
             label[a] = label[b] = min(label[a], label[b])
     first = sorted(set(label))
     assert components(n, np.array(edges, dtype=np.int64)).tolist() == [first.index(x) for x in label]
+
+
+def test_codes_crowded_in_one_band_are_verified_in_blocks(monkeypatch: pytest.MonkeyPatch) -> None:
+    # Portraits crowd in few values of a band: with blocks smaller than one code's share, nothing may be lost.
+    rng = np.random.default_rng(6)
+    codes = rng.integers(0, 4, 600, dtype=np.uint64) << np.uint64(48) | rng.integers(0, 2**12, 600, dtype=np.uint64)
+    whole = within(codes, None, 5)
+    monkeypatch.setattr(_codes, "_AT_ONCE", 50)
+    pairs, distance = within(codes, None, 5)
+    assert (pairs == whole[0]).all()
+    assert (distance == whole[1]).all()
+    assert {tuple(pair) for pair in pairs.tolist()} == _slow_within(codes.tolist(), None, 5)
