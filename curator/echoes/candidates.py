@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
-from curator.domain import Bools, Ints, Readings
+from curator.domain import Codes, Ints, Readings
 from curator.neighbours.codes import collapsed, within
 from curator.neighbours.nearest import nearest
 
@@ -17,65 +18,118 @@ _NEAREST = 2
 """Embedding neighbours, of the own identity and of others apart: a crop keeps its face, whatever its hash does."""
 _MOST_OF_ONE_CODE = 3
 """Photos that share one code exactly are chained, each with so many that follow it, not paired all with all."""
+_MOST_OF_ONE_PHOTO = 12
+"""Pairs that a hash may bring to a photo, the nearest first: the shots of one person lie within the radius by scores,
+and a folder of a thousand would bring a hundred thousand pairs."""
 _FLAT = 4.0
 """Grey standard deviation below which a picture has nothing to register."""
+
+Pairs = NDArray[np.int64]
 
 
 @dataclass(frozen=True)
 class Candidates:
-    """Pairs (m, 2) along the roll, smaller first, and whether the mirror hash brought them together."""
+    """Pairs (m, 2) along the roll, smaller first, each at most once in each of the three."""
 
-    pairs: NDArray[np.int64]
-    mirrored: Bools
+    identical: Pairs
+    """Files of the same bytes, flat ones too: nothing is left to settle."""
+    straight: Pairs
+    mirrored: Pairs
+    """Brought together by the mirror hash."""
 
 
-def candidates(readings: Readings, identity_of: Ints) -> Candidates:
-    """All candidate pairs; flat pictures are in none."""
-    fine = np.flatnonzero((readings.width > 0) & (np.nan_to_num(readings.contrast) >= _FLAT))
-    empty = np.zeros((0, 2), dtype=np.int64)
-    if len(fine) < 2:
-        return Candidates(empty, np.zeros(0, dtype=bool))
+def candidates(readings: Readings, identity_of: Ints, digests: Sequence[str]) -> Candidates:
+    """All candidate pairs. Of files with the same bytes in one identity the first stands for all, and flat pictures
+    are among the identical only."""
+    readable = np.flatnonzero(readings.width > 0)
+    _, content = np.unique(np.array(digests)[readable], return_inverse=True)
+    identical = _identical(readable, content, identity_of[readable])
+    _, first = np.unique(np.stack([content, identity_of[readable]]), axis=1, return_index=True)
+    fine = np.sort(readable[first])
+    fine = fine[np.nan_to_num(readings.contrast[fine]) >= _FLAT]
     straight = [_by_code(codes[fine]) for codes in (readings.dct, readings.difference)]
     straight.append(_by_embedding(readings, identity_of, fine))
-    mirror, _ = within(readings.mirror[fine], readings.dct[fine], _RADIUS)
-    mirror = mirror[mirror[:, 0] != mirror[:, 1]]
-    plain = np.unique(np.sort(fine[np.concatenate(straight)], axis=1), axis=0)
-    turned = np.unique(np.sort(fine[mirror], axis=1), axis=0)
-    pairs = np.concatenate([plain, turned])
-    flags = np.repeat([False, True], [len(plain), len(turned)])
-    return Candidates(pairs, flags)
+    mirrored = _by_mirror(readings.mirror[fine], readings.dct[fine])
+    return Candidates(
+        identical,
+        _distinct(fine[np.concatenate(straight)], digests),
+        _distinct(fine[mirrored], digests),
+    )
 
 
-def _by_code(codes: NDArray[np.uint64]) -> NDArray[np.int64]:
+def _identical(photos: Ints, content: Ints, identity_of: Ints) -> Pairs:
+    """Each photo with the first of its content, and with the first of it in another identity than that one's."""
+    order = np.argsort(content, kind="stable")
+    first = order[np.searchsorted(content[order], content)]
+    away = np.flatnonzero(identity_of != identity_of[first])
+    found = [np.stack([first, np.arange(len(photos))], axis=1)]
+    if len(away):
+        kinds, at = np.unique(content[away], return_index=True)
+        place = np.minimum(np.searchsorted(kinds, content), len(kinds) - 1)
+        own = np.flatnonzero((kinds[place] == content) & (identity_of == identity_of[first]))
+        found.append(np.stack([own, away[at[place[own]]]], axis=1))
+    pairs = np.sort(photos[np.concatenate(found)], axis=1)
+    return np.unique(pairs[pairs[:, 0] != pairs[:, 1]], axis=0).astype(np.int64)
+
+
+def _distinct(pairs: Ints, digests: Sequence[str]) -> Pairs:
+    """Each pair of photos of different content once, smaller first."""
+    if len(pairs) == 0:
+        return np.zeros((0, 2), dtype=np.int64)
+    found = np.unique(np.sort(pairs, axis=1), axis=0)
+    different = [digests[a] != digests[b] for a, b in found.tolist()]
+    kept: Pairs = found[np.array(different)]
+    return kept
+
+
+def _by_code(codes: Codes) -> Pairs:
     """Pairs within the radius: one photo stands for all of its code against other codes, and chains tie the rest."""
     distinct, place = collapsed(codes)
     order = np.argsort(place, kind="stable")
     first = order[np.searchsorted(place[order], np.arange(len(distinct)))]
-    near, _ = within(distinct, None, _RADIUS)
+    near, distance = within(distinct, None, _RADIUS)
     chains = [
         np.stack([order[:-step], order[step:]], axis=1)[place[order[:-step]] == place[order[step:]]]
         for step in range(1, _MOST_OF_ONE_CODE + 1)
     ]
-    return np.concatenate([first[near], *chains])
+    return np.concatenate([first[_nearest_of_each(near, distance)], *chains])
 
 
-def _by_embedding(readings: Readings, identity_of: Ints, fine: Ints) -> NDArray[np.int64]:
+def _by_mirror(mirror: Codes, codes: Codes) -> Pairs:
+    """Pairs whose codes lie within the radius when one photo is mirrored; one photo stands for all of its code."""
+    own, own_first = np.unique(mirror, return_index=True)
+    other, other_first = np.unique(codes, return_index=True)
+    near, distance = within(own, other, _RADIUS)
+    pairs = np.stack([own_first[near[:, 0]], other_first[near[:, 1]]], axis=1)
+    # A photo that is nearly its own mirror image is no pair.
+    true = pairs[:, 0] != pairs[:, 1]
+    return _nearest_of_each(pairs[true], distance[true])
+
+
+def _nearest_of_each(pairs: Pairs, distance: NDArray[np.uint8]) -> Pairs:
+    """The pairs that are among the nearest of either of their ends."""
+    node = np.concatenate([pairs[:, 0], pairs[:, 1]])
+    row = np.tile(np.arange(len(pairs)), 2)
+    order = np.lexsort((row, np.tile(distance, 2), node))
+    ordered = node[order]
+    rank = np.arange(len(order)) - np.searchsorted(ordered, ordered)
+    return pairs[np.unique(row[order[rank < _MOST_OF_ONE_PHOTO]])]
+
+
+def _by_embedding(readings: Readings, identity_of: Ints, fine: Ints) -> Pairs:
     known = np.flatnonzero(readings.embedded[fine])
     x, groups = readings.embeddings[fine[known]], identity_of[fine[known]]
-    if len(known) == 0:
-        return np.zeros((0, 2), dtype=np.int64)
     across, _ = nearest(x, x, _NEAREST, forbidden_query_group=groups, base_group=groups)
     pairs = [_paired(known, known, across)]
-    for group in np.unique(groups):
-        members = known[groups == group]
-        own = readings.embeddings[fine[members]]
-        number = np.arange(len(members))
+    order = np.argsort(groups, kind="stable")
+    for members in np.split(order, np.flatnonzero(np.diff(groups[order])) + 1):
+        own, number = x[members], np.arange(len(members))
         index, _ = nearest(own, own, _NEAREST, forbidden_query_group=number, base_group=number)
-        pairs.append(_paired(members, members, index))
+        pairs.append(_paired(known[members], known[members], index))
     return np.concatenate(pairs)
 
 
-def _paired(queries: Ints, base: Ints, index: Ints) -> NDArray[np.int64]:
+def _paired(queries: Ints, base: Ints, index: Ints) -> Pairs:
     a = np.repeat(queries, index.shape[1])
     b = index.ravel()
     return np.stack([a[b >= 0], base[b[b >= 0]]], axis=1)

@@ -17,8 +17,9 @@ def group(
 ) -> tuple[EchoGroup, ...]:
     """Groups of photos tied by links, in the order of their first photos.
 
-    Copies tie transitively: a copy of a copy is a copy. Bursts do not, since a chain of like frames would tie a whole
-    identity: a burst link between two groups of copies makes a group of its own two photos.
+    Copies tie transitively: a copy of a copy is a copy, so that a photo lies in one group of copies at most. Bursts do
+    not, since a chain of like frames would tie a whole identity: what links two shots as a burst, whichever copies of
+    them it is between, makes one group of the linked photos.
     """
     place = roll.index_of()
     copies = [link for link in links if link.change != Change.BURST]
@@ -27,8 +28,12 @@ def group(
     gathered: dict[int, list[EchoLink]] = defaultdict(list)
     for link in copies:
         gathered[int(label[place[link.a]])].append(link)
-    parts = list(gathered.values())
-    parts += [[link] for link in links if link.change == Change.BURST and label[place[link.a]] != label[place[link.b]]]
+    moments: dict[tuple[int, ...], list[EchoLink]] = defaultdict(list)
+    for link in links:
+        shots = tuple(sorted({int(label[place[link.a]]), int(label[place[link.b]])}))
+        if link.change == Change.BURST and len(shots) == 2:
+            moments[shots].append(link)
+    parts = [*gathered.values(), *moments.values()]
     groups = [_made(part, roll, readings, place, split_of) for part in parts]
     return tuple(sorted(groups, key=lambda group: (group.photos, group.id)))
 
@@ -46,7 +51,8 @@ def _made(
     scope = Scope.WITHIN_IDENTITY if len(identities) == 1 else Scope.ACROSS_IDENTITIES
     if len(splits) > 1:
         scope = Scope.ACROSS_SPLITS
-    told = " ".join(sorted(roll.digests[place[photo]] for photo in photos)) + links[0].change
+    kind = "burst" if links[0].change == Change.BURST else "copies"
+    told = " ".join([kind, *sorted(roll.digests[place[photo]] for photo in photos)])
     name = "e-" + hashlib.sha256(told.encode()).hexdigest()[:12]
     ordered = tuple(sorted(links, key=lambda link: (link.a, link.b)))
     return EchoGroup(name, scope, photos, ordered, _keep(photos, readings, place))

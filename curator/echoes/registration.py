@@ -1,188 +1,211 @@
-"""Registration: one photo brought over another by an affine transform, and how well they then agree, block by block.
+"""Registration: photos brought over others by affine transforms, many pairs at a time.
 
-Inverse compositional Gauss-Newton (Baker and Matthews 2004) on grey values normalised to zero mean and unit variance
-over the common area, so that brightness and contrast drop out. Coordinates are of the unit square of each photo.
+Inverse compositional Gauss-Newton (Baker and Matthews 2004) with the weights of Geman and McClure, on grey values less
+their local mean and over their local spread. So light and tone drop out, and what was pasted over a part of a photo
+stays a matter of that part: it neither drags the photo along nor hides that the rest agrees.
+Coordinates are of the unit square of each photo; arrays of pixels are float32.
 """
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cache
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.ndimage import gaussian_filter
 
-_Reals = NDArray[np.float64]
+from curator.domain import Bools, Floats
+from curator.echoes.agreement import block_agreement
+
+_Reals = NDArray[np.float32]
+_Indices = NDArray[np.integer[Any]]
 
 COARSE, FINE = 32, 96
 """Sides in pixels of the squares that photos are stretched to: to try the starts, and to settle."""
-_COARSE_STEPS, _FINE_STEPS = 10, 15
+_COARSE_STEPS, _FINE_STEPS = 10, 8
 _STILL = 2e-4
 """A step smaller than this (in unit squares) ends the iteration."""
-_PARAMETERS = 6
-_OUTLIER, _LEAST_OUTLIER = 6.0, 0.3
-"""Pixels whose error is beyond so many times the median error, and beyond so many standard deviations, are outliers."""
+_COARSE_LOCAL, _FINE_LOCAL = 1 / 10, 1 / 20
+"""Width of the local mean and spread, as a share of the side. The rim of a label or of a crop spoils so much."""
+_FLOOR = 3.0
+"""Grey values added to the local spread, so that the noise of even parts is not blown up."""
+_COARSE_TOLERANCE, _FINE_TOLERANCE = 0.8, 0.6
+"""Error, in local spreads, at which a pixel's say in a step is down to a quarter."""
 _LEAST_COMMON = 0.4
 """Share of the first photo that must be seen in the second."""
-_BLOCKS = 8
-_TEXTURED = 0.15
-"""Blocks with less than this share of the picture's standard deviation have nothing to agree on."""
-_KEPT_BLOCKS = 0.75
-"""Agreement is that of the better three quarters of the blocks: a pasted label or a moustache covers fewer."""
+_HOPELESS = 0.7
+"""Nearness of the best start below which nothing is settled: half of the candidates end here, cheaply."""
 
 
 @dataclass(frozen=True)
 class Registered:
     """How photo b lies over photo a."""
 
-    matrix: _Reals
+    matrix: Floats
     """(2, 3), from unit-square coordinates of a to those of b."""
     agreement: float
-    """0..1: mean correlation of the better blocks."""
+    """0..1, block by block: see `curator.echoes.agreement`."""
     disagreeing: float
     """Share of the textured blocks that do not correlate."""
-    overall: float
-    """Correlation over the whole common area."""
-
-
-def _starts() -> list[_Reals]:
-    """Identity; a centre crop either way; crops from each corner either way."""
-    found = [_about(1.0, 0.5, 0.5), _about(1.18, 0.5, 0.5), _about(1 / 1.18, 0.5, 0.5)]
-    for x in (0.0, 1.0):
-        for y in (0.0, 1.0):
-            found += [_about(1.12, x, y), _about(1 / 1.12, x, y)]
-    return found
-
-
-def _about(scale: float, x: float, y: float) -> _Reals:
-    return np.array([[scale, 0.0, x * (1 - scale)], [0.0, scale, y * (1 - scale)]])
-
-
-_FIRST_STARTS = 3
-_HOPEFUL = 0.8
-"""Overall correlation from the first starts below which the corner starts are not tried."""
-_HOPELESS = 0.65
-"""Overall correlation of the best start below which nothing is settled: most candidates end here, cheaply."""
-_GOOD_START = 0.97
-
-
-class Template:
-    """A photo prepared to have others brought over it."""
-
-    def __init__(self, grey: _Reals) -> None:
-        """`grey` is (side, side)."""
-        self.side = grey.shape[0]
-        centres = (np.arange(self.side) + 0.5) / self.side
-        self.x, self.y = (part.ravel() for part in np.meshgrid(centres, centres))
-        self.grey = grey
-        down, across = np.gradient(grey * self.side)
-        dx, dy = across.ravel(), down.ravel()
-        self.descent = np.stack([dx * self.x, dx * self.y, dx, dy * self.x, dy * self.y, dy], axis=1)
-
-    def register(self, other: _Reals, start: _Reals, steps: int) -> tuple[_Reals, float]:
-        """The matrix reached from `start`, and the correlation over the common area (-1 where it is too small)."""
-        matrix, correlation = start, -1.0
-        trusted = np.ones(self.x.size, dtype=bool)
-        for _ in range(steps):
-            values, seen = self.sample(other, matrix)
-            used = seen & trusted
-            if seen.mean() < _LEAST_COMMON or used.sum() < 4 * _PARAMETERS:
-                return matrix, -1.0
-            target, moved = self.grey.ravel(), values
-            spread, own_spread = moved[used].std(), target[used].std()
-            if spread < 1e-9 or own_spread < 1e-9:
-                return matrix, -1.0
-            error = (moved - moved[used].mean()) / spread - (target - target[used].mean()) / own_spread
-            correlation = 1 - 0.5 * float((error[seen] ** 2).mean())
-            # What was pasted on must not drag the photo along: far outliers have no say in the next step.
-            trusted = np.abs(error) <= max(_LEAST_OUTLIER, _OUTLIER * float(np.median(np.abs(error[seen]))))
-            used = seen & trusted
-            descent = self.descent[used] / own_spread
-            try:
-                step = np.linalg.solve(descent.T @ descent, descent.T @ error[used])
-            except np.linalg.LinAlgError:
-                return matrix, correlation
-            matrix = _composed(matrix, step)
-            if np.abs(step).max() < _STILL:
-                break
-        return matrix, correlation
-
-    def sample(self, other: _Reals, matrix: _Reals) -> tuple[_Reals, NDArray[np.bool_]]:
-        """`other` at the places of this photo's pixels (bilinear), and where they lie inside it."""
-        side = other.shape[0]
-        u = (matrix[0, 0] * self.x + matrix[0, 1] * self.y + matrix[0, 2]) * side - 0.5
-        v = (matrix[1, 0] * self.x + matrix[1, 1] * self.y + matrix[1, 2]) * side - 0.5
-        seen = (u > -0.5) & (u < side - 0.5) & (v > -0.5) & (v < side - 0.5)
-        u, v = np.clip(u, 0, side - 1.001), np.clip(v, 0, side - 1.001)
-        left, top = u.astype(np.int64), v.astype(np.int64)
-        at = top * side + left
-        fx, fy = u - left, v - top
-        flat = other.ravel()
-        upper = flat[at] * (1 - fx) + flat[at + 1] * fx
-        lower = flat[at + side] * (1 - fx) + flat[at + side + 1] * fx
-        return upper * (1 - fy) + lower * fy, seen
-
-
-def _composed(matrix: _Reals, step: _Reals) -> _Reals:
-    """The warp after the inverse of a small step on the template's side."""
-    whole = np.vstack([matrix, [0.0, 0.0, 1.0]])
-    small = np.array([[1 + step[0], step[1], step[2]], [step[3], 1 + step[4], step[5]], [0.0, 0.0, 1.0]])
-    composed: _Reals = (whole @ np.linalg.inv(small))[:2]
-    return composed
 
 
 @dataclass(frozen=True)
 class Prepared:
-    """One photo at both sizes, as template and as picture."""
+    """One photo's grey values, ready for registration."""
 
-    coarse: Template
-    fine: Template
+    coarse: _Reals
+    """(32, 32), local mean and spread taken out."""
+    fine: _Reals
+    """(96, 96), likewise."""
+    grey: _Reals
+    """(96, 96), as they are."""
 
 
-def prepare(coarse: _Reals, fine: _Reals) -> Prepared:
-    """Prepare a photo's grey values at (32, 32) and (96, 96)."""
-    return Prepared(Template(coarse), Template(fine))
-
-
-_STARTS = _starts()
+def prepare(coarse: Floats, fine: Floats) -> Prepared:
+    """Prepare a photo's grey values, 0..255, at (32, 32) and (96, 96)."""
+    grey = np.asarray(fine, dtype=np.float32)
+    small = _evened(np.asarray(coarse, dtype=np.float32), _COARSE_LOCAL)
+    return Prepared(small, _evened(gaussian_filter(grey, 1.0), _FINE_LOCAL), grey)
 
 
 def register(a: Prepared, b: Prepared) -> Registered:
-    """Bring photo b over photo a: the starts are tried small, the best is settled large."""
-    best, correlation = _STARTS[0], -1.0
-    for number, start in enumerate(_STARTS):
-        if number >= _FIRST_STARTS and not _HOPEFUL <= correlation < _GOOD_START:
+    """Bring photo b over photo a."""
+    return register_many([a], [b])[0]
+
+
+def register_many(a: Sequence[Prepared], b: Sequence[Prepared]) -> list[Registered]:
+    """Bring each photo of `b` over the one of `a` at its place. Every start is tried small, the best settled large."""
+    if not a:
+        return []
+    pairs, starts = len(a), len(_starts())
+    each = np.repeat(np.arange(pairs), starts)
+    climbed, near = _climb([p.coarse for p in a], [p.coarse for p in b], each, np.tile(_starts(), (pairs, 1, 1)))
+    near = near.reshape(pairs, starts)
+    matrix = climbed.reshape(pairs, starts, 2, 3)[np.arange(pairs), near.argmax(axis=1)]
+    found = [Registered(m.astype(np.float64), 0.0, 1.0) for m in matrix]
+    hopeful = np.flatnonzero(near.max(axis=1) >= _HOPELESS).tolist()
+    if not hopeful:
+        return found
+    firsts, seconds = [a[i] for i in hopeful], [b[i] for i in hopeful]
+    each = np.arange(len(hopeful))
+    matrix, _ = _climb([p.fine for p in firsts], [p.fine for p in seconds], each, matrix[hopeful])
+    values, seen = _sample(np.stack([p.grey for p in seconds]), each, matrix)
+    shape = (len(hopeful), FINE, FINE)
+    agreement, disagreeing = block_agreement(
+        np.stack([p.grey for p in firsts]), values.reshape(shape), seen.reshape(shape)
+    )
+    for place, row in enumerate(hopeful):
+        found[row] = Registered(matrix[place].astype(np.float64), float(agreement[place]), float(disagreeing[place]))
+    return found
+
+
+def _evened(grey: _Reals, local: float) -> _Reals:
+    """Grey values less their local mean, over their local spread."""
+    width = local * len(grey)
+    rest = grey - gaussian_filter(grey, width)
+    evened: _Reals = rest / (np.sqrt(gaussian_filter(rest * rest, width)) + np.float32(_FLOOR))
+    return evened
+
+
+@cache
+def _starts() -> _Reals:
+    """(11, 2, 3): identity; a crop at the centre, either way; a crop from each corner, either way."""
+
+    def about(scale: float, x: float, y: float) -> list[list[float]]:
+        return [[scale, 0.0, x * (1 - scale)], [0.0, scale, y * (1 - scale)]]
+
+    found = [about(1.0, 0.5, 0.5), about(1.18, 0.5, 0.5), about(1 / 1.18, 0.5, 0.5)]
+    corners = [(x, y) for x in (0.0, 1.0) for y in (0.0, 1.0)]
+    found += [about(scale, x, y) for x, y in corners for scale in (1.14, 1 / 1.14)]
+    return np.array(found, dtype=np.float32)
+
+
+@cache
+def _grid(side: int) -> tuple[_Reals, _Reals]:
+    """x and y (side * side,) of the centres of the pixels, in unit squares."""
+    centres = (np.arange(side, dtype=np.float32) + np.float32(0.5)) / np.float32(side)
+    x, y = np.meshgrid(centres, centres)
+    return x.ravel(), y.ravel()
+
+
+def _descent(templates: _Reals) -> _Reals:
+    """(p, side * side, 6): how each pixel of (p, side, side) changes with each parameter of a small affine step."""
+    side = templates.shape[1]
+    x, y = _grid(side)
+    down, across = (part.reshape(len(templates), -1) * side for part in np.gradient(templates, axis=(1, 2)))
+    return np.stack([across * x, across * y, across, down * x, down * y, down], axis=2).astype(np.float32)
+
+
+def _climb(
+    firsts: Sequence[_Reals], seconds: Sequence[_Reals], pair: _Indices, matrix: _Reals
+) -> tuple[_Reals, _Reals]:
+    """The matrices reached from `matrix` (n, 2, 3), each a start for the `pair` (n,) of photos, and how near.
+
+    Nearness is 0..1, the mean say of the pixels that are seen; -1 where too few are.
+    """
+    templates, pictures = np.stack(firsts), np.stack(seconds)
+    descent = _descent(templates)
+    flat = templates.reshape(len(templates), -1)
+    matrix, near = matrix.copy(), np.full(len(pair), -1.0, dtype=np.float32)
+    live = np.arange(len(pair))
+    coarse = templates.shape[1] == COARSE
+    tolerance = np.float32(_COARSE_TOLERANCE if coarse else _FINE_TOLERANCE)
+    for _ in range(_COARSE_STEPS if coarse else _FINE_STEPS):
+        values, seen = _sample(pictures, pair[live], matrix[live])
+        error = values - flat[pair[live]]
+        say = 1 / (1 + (error / tolerance) ** 2)
+        common = seen.mean(axis=1)
+        say *= seen
+        near[live] = np.where(common >= _LEAST_COMMON, say.mean(axis=1) / np.maximum(common, 1e-6), -1.0)
+        going = near[live] > 0
+        live = live[going]
+        if len(live) == 0:
             break
-        matrix, reached = a.coarse.register(b.coarse.grey, start, _COARSE_STEPS)
-        if reached > correlation:
-            best, correlation = matrix, reached
-        if reached >= _GOOD_START:
-            break
-    if correlation < _HOPELESS:
-        return Registered(best, 0.0, 1.0, max(0.0, correlation))
-    matrix, overall = a.fine.register(b.fine.grey, best, _FINE_STEPS)
-    values, seen = a.fine.sample(b.fine.grey, matrix)
-    agreement, disagreeing = _block_agreement(a.fine.grey, values.reshape(FINE, FINE), seen.reshape(FINE, FINE))
-    return Registered(matrix, agreement, disagreeing, max(0.0, overall))
+        ways = descent[pair[live]]
+        weighted = (ways * (say[going] ** 2)[:, :, None]).transpose(0, 2, 1)
+        normal = np.matmul(weighted, ways).astype(np.float64)
+        slope = np.matmul(weighted, error[going][:, :, None]).astype(np.float64)
+        # A picture without texture in some direction must not make the system singular.
+        normal += np.eye(6) * (1e-6 * np.trace(normal, axis1=1, axis2=2)[:, None, None] + 1e-9)
+        step = np.linalg.solve(normal, slope)[:, :, 0]
+        matrix[live] = _composed(matrix[live], step)
+        live = live[np.abs(step).max(axis=1) >= _STILL]
+    return matrix, near
 
 
-def _block_agreement(a: _Reals, b: _Reals, seen: NDArray[np.bool_]) -> tuple[float, float]:
-    size = FINE // _BLOCKS
+def _composed(matrix: _Reals, step: Floats) -> Floats:
+    """Each warp after the inverse of a small step on the template's side. A step too large to invert is cut short."""
+    step = np.clip(step, -0.2, 0.2)
+    small = np.tile(np.eye(3), (len(step), 1, 1))
+    small[:, :2] += step.reshape(-1, 2, 3)
+    whole = np.tile(np.eye(3), (len(step), 1, 1))
+    whole[:, :2] = matrix
+    composed: Floats = (whole @ np.linalg.inv(small))[:, :2]
+    return composed
 
-    def blocks(values: NDArray[np.generic]) -> NDArray[np.generic]:
-        cut = values.reshape(_BLOCKS, size, _BLOCKS, size).swapaxes(1, 2)
-        return cut.reshape(_BLOCKS * _BLOCKS, size * size)
 
-    whole = np.asarray(blocks(seen)).all(axis=1)
-    x, y = (np.asarray(blocks(values), dtype=np.float64)[whole] for values in (a, b))
-    if len(x) < _LEAST_COMMON * _BLOCKS * _BLOCKS:
-        return 0.0, 1.0
-    x, y = x - x.mean(axis=1, keepdims=True), y - y.mean(axis=1, keepdims=True)
-    spread_x, spread_y = x.std(axis=1), y.std(axis=1)
-    textured = (spread_x > _TEXTURED * a.std()) | (spread_y > _TEXTURED * b.std())
-    if textured.sum() < _BLOCKS:
-        return 0.0, 1.0
-    product = (x * y).mean(axis=1)[textured]
-    norm = np.maximum(spread_x * spread_y, 1e-9)[textured]
-    correlation = np.sort(product / norm)[::-1]
-    kept = correlation[: max(1, round(_KEPT_BLOCKS * len(correlation)))]
-    return float(np.clip(kept.mean(), 0, 1)), float((correlation < 0.5).mean())
+def _sample(pictures: _Reals, which: _Indices, matrix: _Reals) -> tuple[_Reals, Bools]:
+    """The pictures (p, side, side) numbered by `which` (n,) at the places of the templates' pixels, bilinear.
+
+    Returns values (n, side * side), and where the places lie inside the pictures.
+    """
+    side = pictures.shape[1]
+    x, y = _grid(side)
+    half = np.float32(0.5)
+    u = (matrix[:, 0, 0, None] * x + matrix[:, 0, 1, None] * y + matrix[:, 0, 2, None]) * side - half
+    v = (matrix[:, 1, 0, None] * x + matrix[:, 1, 1, None] * y + matrix[:, 1, 2, None]) * side - half
+    seen = (u > -0.5) & (u < side - 0.5) & (v > -0.5) & (v < side - 0.5)
+    np.clip(u, 0, side - 1.001, out=u)
+    np.clip(v, 0, side - 1.001, out=v)
+    left, top = u.astype(np.int64), v.astype(np.int64)
+    u -= left
+    v -= top
+    at = top * side + left + (which.astype(np.int64) * side * side)[:, None]
+    flat = pictures.ravel()
+    upper, lower = flat[at], flat[at + side]
+    upper += (flat[at + 1] - upper) * u
+    lower += (flat[at + side + 1] - lower) * u
+    return upper + (lower - upper) * v, seen

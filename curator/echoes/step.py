@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import hashlib
 import io
+import json
 import tempfile
 from collections.abc import Iterator, Mapping
 from contextlib import contextmanager
@@ -25,22 +27,25 @@ from curator.intake.step import run as run_intake
 from curator.ledger import Ledger
 from curator.progress import Progress, stop_if_wanted
 
-_VERSION = "echoes-1"
+_VERSION = "echoes-2"
 _PREPARED = 512
 """Photos kept ready for registration: candidates come sorted, so that each is needed several times in a row."""
-_TOLD_EVERY = 50
+_BATCH = 24
+"""Pairs registered at once."""
 
 
 def find_echoes(ledger: Ledger, *, progress: Progress) -> tuple[EchoGroup, ...]:
-    """All groups of echoes. Kept in the ledger until the roll, the verdicts or the split change."""
+    """All groups of echoes. Their links are kept in the ledger until the roll changes; the split only names groups."""
     split = ledger.split()
     split_of = split[0].split_of if split else None
-    key = f"{_VERSION} {ledger.state()}"
-    known = ledger.finding("echo-links", key)
     roll = ledger.roll()
+    # Not the ledger's whole state: a verdict changes nothing here, and must not cost a search.
+    told = json.dumps([ledger.maker, roll.photos, roll.digests, roll.identities, roll.identity_of.tolist()])
+    key = f"{_VERSION} {hashlib.sha256(told.encode()).hexdigest()[:24]}"
+    known = ledger.finding("echo-links", key)
     readings = ledger.readings(roll)
     if known is None:
-        links = _links(ledger, roll, readings, candidates(readings, roll.identity_of), progress)
+        links = _links(ledger, roll, readings, candidates(readings, roll.identity_of, roll.digests), progress)
         with ledger.writing():
             ledger.put_finding("echo-links", key, [asdict(link) for link in links])
     else:
@@ -49,33 +54,50 @@ def find_echoes(ledger: Ledger, *, progress: Progress) -> tuple[EchoGroup, ...]:
 
 
 def _links(ledger: Ledger, roll: Roll, readings: Readings, found: Candidates, progress: Progress) -> list[EchoLink]:
-    progress.begin("bringing like photos over each other", len(found.pairs))
+    """The links among the candidates, sorted by their places. A stop is heeded between batches."""
 
     @lru_cache(_PREPARED)
     def prepared(i: int, mirrored: bool) -> registration.Prepared:
         return _prepared(ledger.thumbnails([roll.digests[i]])[roll.digests[i]], mirrored)
 
-    links: dict[tuple[int, int], EchoLink] = {}
-    for number, ((a, b), mirrored) in enumerate(zip(found.pairs.tolist(), found.mirrored.tolist(), strict=True), 1):
-        if number % _TOLD_EVERY == 0:
+    progress.begin("bringing like photos over each other", len(found.straight) + len(found.mirrored))
+    links = {
+        (a, b): EchoLink(roll.photos[a], roll.photos[b], Change.IDENTICAL, 0, 1.0) for a, b in found.identical.tolist()
+    }
+    for pairs, mirrored in ((found.straight, False), (found.mirrored, True)):
+        for at in range(0, len(pairs), _BATCH):
             stop_if_wanted(progress)
-            progress.advance(_TOLD_EVERY)
-        if (a, b) in links:
-            continue
-        registered = registration.register(prepared(a, False), prepared(b, mirrored))
-        change = settled_change(_facts(roll, readings, a), _facts(roll, readings, b), registered, mirrored=mirrored)
-        if change is not None:
-            code = readings.mirror[b] if mirrored else readings.dct[b]
-            links[(a, b)] = EchoLink(
-                roll.photos[a],
-                roll.photos[b],
-                change,
-                int(np.bitwise_count(readings.dct[a] ^ code)),
-                1.0 if change == Change.IDENTICAL else round(registered.agreement, 6),
-                mirrored and change != Change.IDENTICAL,
-                tuple(round(float(v), 6) for v in registered.matrix.ravel()),  # type: ignore[arg-type]
+            batch = [(a, b) for a, b in pairs[at : at + _BATCH].tolist() if (a, b) not in links]
+            registered = registration.register_many(
+                [prepared(a, False) for a, _ in batch], [prepared(b, mirrored) for _, b in batch]
             )
+            for (a, b), one in zip(batch, registered, strict=True):
+                change = settled_change(_facts(roll, readings, a), _facts(roll, readings, b), one, mirrored=mirrored)
+                if change is not None:
+                    links[(a, b)] = _link(roll, readings, (a, b), change, one, mirrored)
+            progress.advance(len(pairs[at : at + _BATCH]))
     return [links[pair] for pair in sorted(links)]
+
+
+def _link(
+    roll: Roll,
+    readings: Readings,
+    pair: tuple[int, int],
+    change: Change,
+    registered: registration.Registered,
+    mirrored: bool,
+) -> EchoLink:
+    a, b = pair
+    code = readings.mirror[b] if mirrored else readings.dct[b]
+    return EchoLink(
+        roll.photos[a],
+        roll.photos[b],
+        change,
+        int(np.bitwise_count(readings.dct[a] ^ code)),
+        round(registered.agreement, 6),
+        mirrored,
+        tuple(round(float(v), 6) for v in registered.matrix.ravel()),  # type: ignore[arg-type]
+    )
 
 
 def _facts(roll: Roll, readings: Readings, i: int) -> Facts:
@@ -142,9 +164,14 @@ def compare(
         readings = ledger.readings(roll)
         side = np.array([int(name.startswith("b/")) for name in roll.photos])
         # To the search the two roots are two identities: what is near across them is all that counts.
-        found = candidates(readings, side)
-        across = side[found.pairs[:, 0]] != side[found.pairs[:, 1]]
-        links = _links(ledger, roll, readings, Candidates(found.pairs[across], found.mirrored[across]), progress)
+        found = candidates(readings, side, roll.digests)
+        across = Candidates(
+            *(
+                pairs[side[pairs[:, 0]] != side[pairs[:, 1]]]
+                for pairs in (found.identical, found.straight, found.mirrored)
+            )
+        )
+        links = _links(ledger, roll, readings, across, progress)
         people = same_people(roll, readings)
     counts = np.bincount(side, minlength=2)
     second = sum(name.startswith("b/") for name in roll.identities)
