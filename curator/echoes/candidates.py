@@ -14,7 +14,7 @@ from curator.neighbours.nearest import nearest
 
 _RADIUS = 10
 """Bits. Re-encoded, resized, toned and blurred copies lie within 4; chance pairs stay rare to a million photos."""
-_NEAREST = 2
+_NEAREST = 3
 """Embedding neighbours, of the own identity and of others apart: a crop keeps its face, whatever its hash does."""
 _MOST_OF_ONE_CODE = 3
 """Photos that share one code exactly are chained, each with so many that follow it, not paired all with all."""

@@ -10,6 +10,8 @@ from curator.domain import Floats, Readings, Roll
 from curator.neighbours.nearest import nearest
 
 _LISTED_FROM = 0.5
+_LEAST_SPREAD = 0.01
+"""Of similarities: a few identities that happen to be alike must not make a hair's breadth a certainty."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -25,8 +27,10 @@ class SamePerson:
 def same_people(roll: Roll, readings: Readings) -> tuple[SamePerson, ...]:
     """Likely same people across `a/...` and `b/...` of a joined roll, most probable first.
 
-    The yardstick is the roll itself: mean similarities of the halves of one identity (same) and of identities of one
-    root (different), both taken as normal; equal priors, so that a probability is one of evidence alone.
+    The yardstick is the roll itself: the similarity between the means of an identity's two halves (same), and between
+    an identity's mean and those nearest to it but one (different; the nearest may be the same person). Both are taken
+    as normal with one spread; equal priors, so that a probability is one of evidence alone. Without two identities of
+    two photos, or without strangers, there is no yardstick and nothing is listed.
     """
     n, d = len(roll.identities), readings.embeddings.shape[1]
     if d == 0:
@@ -65,10 +69,12 @@ def same_people(roll: Roll, readings: Readings) -> tuple[SamePerson, ...]:
 
 
 def _probability(value: float, same: Floats, different: Floats) -> float:
-    if len(different) < 2:
+    """Of two normals with one spread, the share of the first at `value`."""
+    gap = float(same.mean()) - float(different.mean()) if len(different) >= 2 else 0.0
+    if gap <= 0:
         return 0.0
-    spread = max(1e-4, float(same.std()) + float(different.std()))
-    # Linear in the similarity: the middle between the two means is even odds, each mean about 50 to 1.
+    squares = float(((same - same.mean()) ** 2).sum()) + float(((different - different.mean()) ** 2).sum())
+    spread = max(_LEAST_SPREAD, (squares / (len(same) + len(different) - 2)) ** 0.5)
     middle = (float(same.mean()) + float(different.mean())) / 2
-    gap = max(spread, abs(float(same.mean()) - float(different.mean())))
-    return float(1 / (1 + np.exp(-8 * (value - middle) / gap)))
+    log_odds = np.clip((value - middle) * gap / spread**2, -50, 50)
+    return float(1 / (1 + np.exp(-log_odds)))
