@@ -16,10 +16,10 @@ from curator.recipe import BANDS, PairsRecipe
 _Reals = NDArray[np.float64]
 TrustOf = Callable[[Ints, Ints], _Reals]
 
-_MOST_OF_ONE = 150
-"""Photos of one identity from which all mated pairs are candidates; of larger ones so many are drawn."""
 _SPARE = 6
-"""Non-mated candidates drawn for each row wanted, so that bands, caps and trust have a choice."""
+"""Candidates drawn for each row wanted, so that bands, caps and trust have a choice."""
+_CAPS = 4
+"""Mated candidates of one identity, as times its cap: of a person with a thousand photos the rest would be idle."""
 _NEAREST = 5
 
 
@@ -37,25 +37,34 @@ class Pool:
         return Pool(self.a[chosen], self.b[chosen], self.similarity[chosen], self.trust[chosen], self.band[chosen])
 
 
-def mated_candidates(photos: Ints, identity_of: Ints, rng: np.random.Generator) -> tuple[Ints, Ints]:
-    """Pairs of `photos` of one identity, all of them for identities of ordinary size."""
+def mated_candidates(
+    photos: Ints, identity_of: Ints, rows: int, cap: int, rng: np.random.Generator
+) -> tuple[Ints, Ints]:
+    """Pairs of `photos` of one identity: all where the identity has few, else as many drawn as could be of use."""
     order = photos[np.argsort(identity_of[photos], kind="stable")]
     firsts: list[Ints] = [np.zeros(0, dtype=np.int64)]
     seconds: list[Ints] = [np.zeros(0, dtype=np.int64)]
-    for members in np.split(order, np.flatnonzero(np.diff(identity_of[order])) + 1):
-        chosen = members
-        if len(members) > _MOST_OF_ONE:
-            chosen = np.sort(rng.choice(members, _MOST_OF_ONE, replace=False))
-        first, second = np.triu_indices(len(chosen), 1)
-        firsts.append(chosen[first])
-        seconds.append(chosen[second])
+    groups = [g for g in np.split(order, np.flatnonzero(np.diff(identity_of[order])) + 1) if len(g) > 1]
+    most = max(_CAPS * cap, -(-rows * _SPARE // max(1, len(groups))))
+    for members in groups:
+        total = len(members) * (len(members) - 1) // 2
+        number = np.arange(total) if total <= most else np.sort(rng.choice(total, most, replace=False))
+        low, high = _numbered_pairs(number)
+        firsts.append(members[low])
+        seconds.append(members[high])
     return np.concatenate(firsts), np.concatenate(seconds)
+
+
+def _numbered_pairs(number: Ints) -> tuple[Ints, Ints]:
+    """Pairs (low, high) in the order (0,1) (0,2) (1,2) (0,3) ...: drawn without listing them all."""
+    high = ((1 + np.sqrt(1 + 8 * number.astype(np.float64))) // 2).astype(np.int64)
+    return number - high * (high - 1) // 2, high
 
 
 def non_mated_candidates(
     photos: Ints, identity_of: Ints, embeddings: NDArray[np.float32], rows: int, rng: np.random.Generator
 ) -> tuple[Ints, Ints]:
-    """Distinct pairs of `photos` of two identities: drawn by identity first, and each photo's nearest strangers."""
+    """Distinct pairs of `photos` of two identities: drawn by identity first, and the nearest strangers of some."""
     order = photos[np.argsort(identity_of[photos], kind="stable")]
     names, start, count = np.unique(identity_of[order], return_index=True, return_counts=True)
     if len(names) < 2 or rows == 0:
@@ -65,10 +74,17 @@ def non_mated_candidates(
     second = (first + rng.integers(1, len(names), n)) % len(names)
     drawn_a = order[start[first] + rng.integers(0, 1 << 62, n) % count[first]]
     drawn_b = order[start[second] + rng.integers(0, 1 << 62, n) % count[second]]
-    x, groups = embeddings[photos], identity_of[photos]
-    index, _ = nearest(x, x, _NEAREST, forbidden_query_group=groups, base_group=groups)
+    # Not of every photo: time would go with the square of the roll, for rows that are not wanted.
+    asked = photos if len(photos) <= n else np.sort(rng.choice(photos, n, replace=False))
+    index, _ = nearest(
+        embeddings[asked],
+        embeddings[photos],
+        _NEAREST,
+        forbidden_query_group=identity_of[asked],
+        base_group=identity_of[photos],
+    )
     met = index.ravel() >= 0
-    a = np.concatenate([drawn_a, np.repeat(photos, index.shape[1])[met]])
+    a = np.concatenate([drawn_a, np.repeat(asked, index.shape[1])[met]])
     b = np.concatenate([drawn_b, photos[index.ravel()[met]]])
     pairs = np.unique(np.stack([np.minimum(a, b), np.maximum(a, b)], axis=1), axis=0)
     return pairs[:, 0], pairs[:, 1]
@@ -89,10 +105,10 @@ def pooled(a: Ints, b: Ints, embeddings: NDArray[np.float32], trust_of: TrustOf,
 
 @dataclass(frozen=True)
 class Sample:
-    """Chosen pairs, how many each identity is in, and what fell short, in words."""
+    """Chosen pairs, and per thing asked (a band, its matched share) how many were found and how many wanted."""
 
     pairs: Pool
-    shortfalls: tuple[str, ...]
+    found: dict[str, tuple[int, int]]
 
 
 def choose(
@@ -108,60 +124,56 @@ def choose(
     """`rows` pairs of `pool` in the recipe's bands, no identity beyond the cap; `used` (k,) is counted up in place.
 
     `matched`: along the pool, whether the two photos share the attributes to match on; the recipe's share of each
-    band's rows comes from these.
+    band's rows comes from these. Where a band runs out, others fill the rows.
     """
-    taken = np.zeros(len(pool.a), dtype=bool)
+    draw = _Draw(pool, recipe.per_identity, identity_of, used, np.zeros(len(pool.a), dtype=bool))
     order = rng.permutation(len(pool.a))
-    chosen: list[int] = []
-    shortfalls = []
+    found: dict[str, tuple[int, int]] = {}
     wanted = _apportioned(rows, [recipe.bands.get(name, 0.0) for name in BANDS])
     for number, count in enumerate(wanted):
         here = order[pool.band[order] == number]
         got = 0
         if matched is not None:
             share = round(count * recipe.match_share)
-            got = _fill(pool, here[matched[here]], share, recipe.per_identity, identity_of, used, taken, chosen)
-            if got < share:
-                shortfalls.append(f"{got} of {share} matched {BANDS[number]} pairs found")
-        got += _fill(pool, here, count - got, recipe.per_identity, identity_of, used, taken, chosen)
-        if got < count:
-            shortfalls.append(f"{got} of {count} {BANDS[number]} pairs found")
-    lacking = rows - len(chosen)
-    if lacking:
-        _fill(pool, order, lacking, recipe.per_identity, identity_of, used, taken, chosen)
-    if len(chosen) < rows:
-        shortfalls.append(f"{len(chosen)} of {rows} pairs in all: the candidates or the cap of an identity ran out")
-    return Sample(pool.take(np.array(sorted(chosen), dtype=np.int64)), tuple(shortfalls))
+            got = draw.fill(here[matched[here]], share)
+            found[f"matched {BANDS[number]} pairs"] = (got, share)
+        got += draw.fill(here, count - got)
+        found[f"{BANDS[number]} pairs"] = (got, count)
+    draw.fill(order, rows - int(draw.taken.sum()))
+    return Sample(pool.take(draw.taken), found)
 
 
-def _fill(
-    pool: Pool,
-    order: Ints,
-    count: int,
-    cap: int,
-    identity_of: Ints,
-    used: NDArray[np.int64],
-    taken: Bools,
-    chosen: list[int],
-) -> int:
-    """Take up to `count` pairs in `order`, in rounds under a growing cap, so that identities are used evenly."""
-    got, level = 0, 1
-    while got < count:
-        for at in order.tolist():
-            if got == count:
+@dataclass(frozen=True)
+class _Draw:
+    """A list in the making: what is taken, and how often each identity is used."""
+
+    pool: Pool
+    cap: int
+    identity_of: Ints
+    used: NDArray[np.int64]
+    taken: Bools
+
+    def fill(self, order: Ints, count: int) -> int:
+        """Take up to `count` pairs in `order`, in rounds under a rising cap, so that identities are used evenly."""
+        first, second = self.identity_of[self.pool.a], self.identity_of[self.pool.b]
+        got, level, left = 0, 0, order
+        while got < count:
+            left = left[~self.taken[left]]
+            busy = np.maximum(self.used[first[left]], self.used[second[left]])
+            if not (busy < self.cap).any():
                 break
-            a, b = identity_of[pool.a[at]], identity_of[pool.b[at]]
-            if taken[at] or used[a] >= level or used[b] >= level:
-                continue
-            taken[at] = True
-            used[a] += 1
-            used[b] += a != b
-            chosen.append(at)
-            got += 1
-        if level >= cap:
-            break
-        level = min(cap, level * 2)
-    return got
+            # The next level that lets a pair in; then a little more, so that rounds stay few.
+            level = min(self.cap, max(level + max(1, level // 4), int(busy.min()) + 1))
+            for at in left[busy < level].tolist():
+                a, b = first[at], second[at]
+                if self.used[a] < level and self.used[b] < level:
+                    self.taken[at] = True
+                    self.used[a] += 1
+                    self.used[b] += a != b
+                    got += 1
+                    if got == count:
+                        break
+        return got
 
 
 def _apportioned(rows: int, shares: list[float]) -> list[int]:

@@ -17,11 +17,12 @@ from curator.domain import Floats, Verdict
 from curator.doubts.step import find_doubts
 from curator.echoes.step import find_echoes
 from curator.editions import lists as _lists
-from curator.editions.assembling import Lists, Material, assemble, use_of_identities
+from curator.editions.assembling import assemble, use_of_identities
 from curator.editions.audit import AuditReport, audit_path
 from curator.editions.bag import check_target, write_bag
 from curator.editions.croissant import UNDATED, croissant_bytes
 from curator.editions.exclusions import left_out, usable
+from curator.editions.material import Lists, Material
 from curator.editions.report import report_bytes
 from curator.errors import BadInput
 from curator.ledger import Ledger
