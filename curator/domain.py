@@ -269,4 +269,4 @@ class Assignment:
     """Identity to split name."""
     seed: int
     gap_to_bound: float
-    """How far the assignment's objective may be from the best possible, as a share of it."""
+    """How far the assignment's objective may be from the best possible: its distance to a lower bound."""

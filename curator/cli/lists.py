@@ -70,6 +70,7 @@ def split(options: Namespace) -> int:
                 "largest_tied": list(report.largest_tied),
                 "ties": [asdict(tie) for tie in report.ties],
                 "conflicts": list(report.conflicts),
+                "shortfalls": list(report.shortfalls),
             }
         )
         return 0
@@ -91,8 +92,8 @@ def split(options: Namespace) -> int:
         f"{len(report.ties)} ties; the largest tied group holds {len(report.largest_tied)} identities; "
         f"gap to the bound {report.assignment.gap_to_bound:.5f}; {report.leaks} leaks"
     )
-    for conflict in report.conflicts:
-        showing.line(conflict)
+    for text in (*report.shortfalls, *report.conflicts):
+        showing.line(text)
     return 0
 
 

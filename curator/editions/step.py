@@ -64,6 +64,9 @@ def write_edition(ledger: Ledger, recipe: Recipe, recipe_text: str, out: Path, *
         verdicts = ledger.verdicts()
         settled = settle(verdicts)
         reasons = left_out(roll, readings, find_doubts(ledger, progress=progress), settled)
+        for i, k in enumerate(roll.identity_of.tolist()):
+            if roll.identities[k] not in split.assignment.split_of:
+                reasons.setdefault(i, "tied to another split of the earlier edition")
         material = Material(
             roll=roll,
             readings=readings,
@@ -76,6 +79,7 @@ def write_edition(ledger: Ledger, recipe: Recipe, recipe_text: str, out: Path, *
         )
         progress.begin("sampling the lists", None)
         made = assemble(material, recipe, lambda: stop_if_wanted(progress))
+        made.shortfalls[:0] = [*split.shortfalls, *split.conflicts]
         progress.begin("writing the edition", None)
         counted = Counter(reasons.values())
         standing = _standing(ledger, material, recipe, made, counted, split.leaks)
@@ -209,4 +213,4 @@ def _photo_table(material: Material) -> Any:
         }
         row |= {f"attribute:{name}": values[i] for name, values in roll.attributes.items()}
         rows.append(row)
-    return _lists.table(_lists.photo_schema(list(roll.attributes)), rows)
+    return _lists.table(_lists.photo_schema(sorted(roll.attributes)), rows)

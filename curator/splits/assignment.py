@@ -34,11 +34,10 @@ def objective(sizes: Sizes, split_of: Ints, shares: _Reals) -> float:
 
 
 def assign(sizes: Sizes, shares: _Reals, *, fixed: Ints, rng: np.random.Generator) -> tuple[NDArray[np.int64], float]:
-    """A split (g,) for each tied group, and the gap of the objective to its bound.
+    """A split (g,) for each tied group, and the gap of the objective to its `bound`.
 
     `fixed` (g,) holds the split of groups that must stay, -1 elsewhere. Largest groups are placed first, each where
-    the objective grows least; then single moves and swaps while they help. The bound is the best that shares of
-    whole identities allow (each quantity can at best meet its share): 0, so the gap is the objective itself.
+    the objective grows least; then single moves and swaps while they help.
     """
     split_of = np.asarray(fixed, dtype=np.int64).copy()
     free = np.flatnonzero(split_of < 0)
@@ -56,7 +55,24 @@ def assign(sizes: Sizes, shares: _Reals, *, fixed: Ints, rng: np.random.Generato
         split_of[g] = int(np.argmax(gain))
         attained[split_of[g]] += relative[g]
     _improve(relative, sizes.importance, shares, split_of, attained, free)
-    return split_of, objective(sizes, split_of, shares)
+    return split_of, objective(sizes, split_of, shares) - bound(sizes, shares, fixed)
+
+
+def bound(sizes: Sizes, shares: _Reals, fixed: Ints) -> float:
+    """What no assignment can go below, for each quantity on its own.
+
+    A group that outweighs the largest share exceeds it wherever it goes, and what stays fixed may exceed its split's
+    share already; the others then lack as much between them, at best evenly.
+    """
+    relative = sizes.weights / np.maximum(sizes.weights.sum(axis=0), 1e-12)
+    usual = max(1, len(shares) - 1)
+    largest = np.maximum(0.0, relative.max(axis=0, initial=0.0) - shares.max())
+    held = np.zeros((len(shares), relative.shape[1]))
+    np.add.at(held, fixed[fixed >= 0], relative[fixed >= 0])
+    over = np.maximum(0.0, held - shares[:, None])
+    by_largest = largest**2 * (1 + 1 / usual)
+    by_fixed = (over**2).sum(axis=0) + over.sum(axis=0) ** 2 / usual
+    return float(np.maximum(by_largest, by_fixed) @ sizes.importance)
 
 
 def _improve(

@@ -9,7 +9,7 @@ from pathlib import Path
 
 import numpy as np
 
-from curator.domain import SPLITS, Assignment, Ints, Readings, Roll
+from curator.domain import SPLITS, Assignment, Bools, Ints, Readings, Roll
 from curator.doubts.step import find_doubts
 from curator.echoes.step import find_echoes
 from curator.errors import BadInput
@@ -17,9 +17,14 @@ from curator.ledger import Ledger
 from curator.progress import Progress, stop_if_wanted
 from curator.recipe import Recipe
 from curator.splits.assignment import Sizes, assign
+from curator.splits.keeping import decide
 from curator.splits.kept import kept_splits
-from curator.splits.ties import Tie, tied_groups, ties
+from curator.splits.leaks import leaks
+from curator.splits.ties import SAME_PERSON_FROM, Tie, tied_groups, ties
 from curator.verdicts import settle
+
+_NOTABLE = 0.05
+"""Shares that miss what was asked by more than this are told of."""
 
 
 @dataclass(frozen=True)
@@ -52,8 +57,11 @@ class SplitReport:
     largest_tied: tuple[str, ...]
     """Identities of the largest tied group."""
     leaks: int
-    """Ties whose identities lie in two splits: 0 unless identities kept from an earlier edition force it."""
+    """Shots, people and kept-together values in two splits, by a check that knows nothing of the ties: 0."""
     conflicts: tuple[str, ...]
+    """Identities left out since an earlier edition and the ties contradict each other, in words."""
+    shortfalls: tuple[str, ...]
+    """Shares that were not reached, and what stood in the way, in words."""
 
 
 def make_split(ledger: Ledger, recipe: Recipe, recipe_text: str, *, progress: Progress) -> SplitReport:
@@ -70,55 +78,71 @@ def make_split(ledger: Ledger, recipe: Recipe, recipe_text: str, *, progress: Pr
         echoes = find_echoes(ledger, progress=progress)
         doubts = find_doubts(ledger, progress=progress)
         progress.begin("assigning identities to splits", None)
-        found = ties(roll, echoes, doubts, settle(ledger.verdicts()), recipe.split.keep_together)
+        settled = settle(ledger.verdicts())
+        found = ties(roll, echoes, doubts, settled, recipe.split.keep_together)
         group_of = tied_groups(roll, found)
         names = [name for name in SPLITS if name in recipe.split.shares]
-        kept = kept_splits(Path(recipe.split.keep_from)) if recipe.split.keep_from else {}
-        fixed, conflicts = _fixed(roll, group_of, kept, names)
+        earlier = kept_splits(Path(recipe.split.keep_from)) if recipe.split.keep_from else {}
+        photos = np.bincount(roll.identity_of, minlength=len(roll.identities))
+        kept = decide(roll.identities, photos, group_of, earlier, names)
         shares = np.array([recipe.split.shares[name] for name in names])
-        sizes = _sizes(roll, readings, group_of, recipe.split.balance)
+        inside = np.array([name not in kept.left_out for name in roll.identities], dtype=bool)
+        sizes = _sizes(roll, readings, group_of, inside, recipe.split.balance)
         rng = np.random.default_rng(recipe.split.seed)
-        split_of_group, gap = assign(sizes, shares, fixed=fixed, rng=rng)
-        split_of = {name: names[split_of_group[group_of[i]]] for i, name in enumerate(roll.identities)}
-        split_of |= {identity: split for identity, split in kept.items() if identity in split_of}
+        split_of_group, gap = assign(sizes, shares, fixed=kept.fixed, rng=rng)
+        split_of = {
+            name: names[split_of_group[group_of[i]]]
+            for i, name in enumerate(roll.identities)
+            if name not in kept.left_out
+        }
         stop_if_wanted(progress)
-        assignment = Assignment(split_of, recipe.split.seed, round(gap, 9))
+        # Rounding leaves a hair below nothing where the bound is met.
+        assignment = Assignment(split_of, recipe.split.seed, max(0.0, round(gap, 9)))
         ledger.put_split(assignment, recipe_text)
-    leaks = sum(split_of[tie.a] != split_of[tie.b] for tie in found)
-    sizes_of_groups = Counter(group_of.tolist())
-    largest = max(sizes_of_groups, key=lambda group: (sizes_of_groups[group], -group))
+    leaking = leaks(roll, split_of, echoes, doubts, settled, recipe.split.keep_together, least=SAME_PERSON_FROM)
+    rows = _share_rows(roll, split_of, recipe, names)
+    largest = _largest(roll, group_of)
     return SplitReport(
         assignment=assignment,
-        shares=_share_rows(roll, split_of, recipe, names),
+        shares=rows,
         balance=_balance_rows(roll, split_of, recipe.split.balance, names),
         ties=found,
-        largest_tied=tuple(name for name, group in zip(roll.identities, group_of, strict=True) if group == largest),
-        leaks=leaks,
-        conflicts=conflicts,
+        largest_tied=largest,
+        leaks=len(leaking),
+        conflicts=kept.conflicts,
+        shortfalls=_shortfalls(rows, largest, found, len(roll.identities)),
     )
 
 
-def _fixed(roll: Roll, group_of: Ints, kept: Mapping[str, str], names: list[str]) -> tuple[Ints, tuple[str, ...]]:
-    """The split of each tied group that an earlier edition decides, and where it contradicts itself."""
-    fixed = np.full(int(group_of.max()) + 1 if len(group_of) else 0, -1, dtype=np.int64)
-    decided: dict[int, str] = {}
-    conflicts = []
-    for identity, group in zip(roll.identities, group_of.tolist(), strict=True):
-        split = kept.get(identity)
-        if split is None:
-            continue
-        if split not in names:
-            raise BadInput(f"The earlier edition has {identity} in '{split}', to which the recipe gives no share.")
-        if fixed[group] < 0:
-            fixed[group], decided[group] = names.index(split), identity
-        elif names[fixed[group]] != split:
-            conflicts.append(
-                f"{identity} was in {split} and {decided[group]} in {names[fixed[group]]}, but they are now tied."
-            )
-    return fixed, tuple(conflicts)
+def _largest(roll: Roll, group_of: Ints) -> tuple[str, ...]:
+    sizes = Counter(group_of.tolist())
+    largest = max(sizes, key=lambda group: (sizes[group], -group))
+    return tuple(name for name, group in zip(roll.identities, group_of, strict=True) if group == largest)
 
 
-def _sizes(roll: Roll, readings: Readings, group_of: Ints, balance: tuple[str, ...]) -> Sizes:
+def _shortfalls(
+    rows: Mapping[str, ShareRow], largest: tuple[str, ...], found: tuple[Tie, ...], identities: int
+) -> tuple[str, ...]:
+    people = max(1, sum(row.identities for row in rows.values()))
+    photos = max(1, sum(row.photos for row in rows.values()))
+    told = [
+        f"split {name}: {row.identities / people:.0%} of identities and {row.photos / photos:.0%} of photos, "
+        f"not {row.asked:.0%}"
+        for name, row in rows.items()
+        if max(abs(row.identities / people - row.asked), abs(row.photos / photos - row.asked)) > _NOTABLE
+    ]
+    if told and len(largest) > 1:
+        inside = set(largest)
+        reasons = Counter(tie.why for tie in found if tie.a in inside)
+        why, times = min(reasons.items(), key=lambda item: (-item[1], item[0]))
+        told.append(
+            f"split: {len(largest)} of {identities} identities are tied to one another and cannot be parted, "
+            f"most often by {why} ({times} of {sum(reasons.values())} ties)"
+        )
+    return tuple(told)
+
+
+def _sizes(roll: Roll, readings: Readings, group_of: Ints, inside: Bools, balance: tuple[str, ...]) -> Sizes:
     n_groups = int(group_of.max()) + 1
     photos = np.bincount(roll.identity_of[readings.embedded], minlength=len(roll.identities)).astype(np.float64)
     columns = [np.ones(len(roll.identities)), photos, photos * (photos - 1) / 2]
@@ -129,7 +153,7 @@ def _sizes(roll: Roll, readings: Readings, group_of: Ints, balance: tuple[str, .
         for value in distinct:
             columns.append(np.bincount(roll.identity_of[values == value], minlength=len(roll.identities)).astype(float))
             importance.append(1.0 / len(distinct))
-    by_identity = np.stack(columns, axis=1)
+    by_identity = np.stack(columns, axis=1) * inside[:, None]
     weights = np.zeros((n_groups, by_identity.shape[1]))
     np.add.at(weights, group_of, by_identity)
     return Sizes(weights, np.array(importance))
@@ -139,7 +163,7 @@ def _share_rows(roll: Roll, split_of: Mapping[str, str], recipe: Recipe, names: 
     photos = np.bincount(roll.identity_of, minlength=len(roll.identities)).tolist()
     rows = {}
     for name in names:
-        mine = [photos[i] for i, identity in enumerate(roll.identities) if split_of[identity] == name]
+        mine = [photos[i] for i, identity in enumerate(roll.identities) if split_of.get(identity) == name]
         rows[name] = ShareRow(
             recipe.split.shares[name], len(mine), sum(mine), sum(count * (count - 1) // 2 for count in mine)
         )
@@ -149,7 +173,7 @@ def _share_rows(roll: Roll, split_of: Mapping[str, str], recipe: Recipe, names: 
 def _balance_rows(
     roll: Roll, split_of: Mapping[str, str], balance: tuple[str, ...], names: list[str]
 ) -> tuple[BalanceRow, ...]:
-    split_of_photo = np.array([split_of[roll.identities[i]] for i in roll.identity_of])
+    split_of_photo = np.array([split_of.get(roll.identities[i], "") for i in roll.identity_of])
     rows = []
     for attribute in balance:
         values = np.array(roll.attributes[attribute])

@@ -54,6 +54,9 @@ def ties(
     for (a, b), answer in sorted(settled.pairs.items()):
         if answer == PairAnswer.SAME and a in place and b in place:
             found += _chain([(owner(a), a), (owner(b), b)], "a verdict 'same'")
+    for a, b in settled.contested_pairs:
+        if a in place and b in place:
+            found += _chain([(owner(a), a), (owner(b), b)], "annotators who disagree")
     for attribute in keep_together:
         holders: dict[str, list[tuple[str, str]]] = defaultdict(list)
         for photo, value in zip(roll.photos, roll.attributes.get(attribute, ()), strict=False):

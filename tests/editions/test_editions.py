@@ -149,3 +149,41 @@ def test_lfw_text_is_refused_in_words_where_names_do_not_allow_it(
     with made_ledger() as ledger:
         report = _written(ledger, recipe_text.replace('"csv"', '"lfw-text"'), tmp_path / "e")
     assert any("lfw-text" in text and "NAME_0001.jpg" in text for text in report.shortfalls)
+
+
+def test_what_an_earlier_edition_parted_and_is_now_one_person_is_left_out(
+    made_ledger: MadeLedger, recipe_text: str, tmp_path: Path
+) -> None:
+    with made_ledger() as ledger:
+        _written(ledger, recipe_text, tmp_path / "a")
+        split = ledger.split()
+        assert split is not None
+        one, other = (
+            next(name for name, held in sorted(split[0].split_of.items()) if held == asked)
+            for asked in ("train", "test")
+        )
+        with ledger.writing():
+            at = "2026-05-01T10:00:00+00:00"
+            ledger.put_verdicts([Verdict(f"{one}/0.jpg", f"{other}/0.jpg", PairAnswer.SAME, "ada", at)])
+        text = recipe_text.replace("seed = 3", f'seed = 3\nkeep_from = "{tmp_path / "a"}"')
+        report = _written(ledger, text, tmp_path / "b")
+    assert report.leaks == 0
+    assert report.left_out == {"tied to another split of the earlier edition": 6}
+    assert f"{other} was in test and is now tied to {one} of train: it is left out" in report.shortfalls
+    assert {row["identity"]: row["split"] for row in _rows(tmp_path / "b", "photos")}.get(one) == "train"
+    assert other not in {row["identity"] for row in _rows(tmp_path / "b", "photos")}
+
+
+def test_a_session_that_ties_nearly_all_is_named_as_what_spoils_the_shares(
+    made_ledger: MadeLedger, recipe_text: str, tmp_path: Path
+) -> None:
+    text = recipe_text.replace('balance = ["club"]', 'keep_together = ["club"]')
+    with made_ledger() as ledger, ledger.writing():
+        roll = ledger.roll()
+        club = ["north" if k < 17 else "south" for k in roll.identity_of.tolist()]
+        clubs = {photo: {"club": name, "band": "x"} for photo, name in zip(roll.photos, club, strict=True)}
+        ledger.put_attributes(clubs)
+        report = _written(ledger, text, tmp_path / "e")
+    assert "split train: 85% of identities and 85% of photos, not 60%" in report.shortfalls
+    assert any("17 of 20 identities are tied to one another" in told for told in report.shortfalls)
+    assert any("the same club north (16 of 16 ties)" in told for told in report.shortfalls)

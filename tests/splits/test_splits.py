@@ -8,7 +8,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from curator.domain import Change, Doubt, DoubtKind, EchoGroup, EchoLink, PairAnswer, Roll, Scope
-from curator.splits.assignment import Sizes, assign, objective
+from curator.splits.assignment import Sizes, assign, bound, objective
 from curator.splits.ties import tied_groups, ties
 from curator.verdicts import Settled
 
@@ -81,18 +81,36 @@ def test_shares_come_close_on_many_small_groups() -> None:
     for column in sizes.weights.T:
         attained = np.bincount(split_of, weights=column, minlength=3) / column.sum()
         np.testing.assert_allclose(attained, _SHARES, atol=0.01)
-    assert gap == pytest.approx(objective(sizes, split_of, _SHARES))
+    assert gap == pytest.approx(objective(sizes, split_of, _SHARES) - bound(sizes, _SHARES, np.full(400, -1)))
+
+
+def _best(sizes: Sizes, fixed: np.ndarray) -> float:
+    choices = (np.array(choice) for choice in itertools.product(range(3), repeat=len(fixed)))
+    return min(objective(sizes, c, _SHARES) for c in choices if (c[fixed >= 0] == fixed[fixed >= 0]).all())
 
 
 def test_small_cases_come_near_the_best_of_all() -> None:
     rng = np.random.default_rng(8)
     for _ in range(10):
         sizes = Sizes(np.stack([np.ones(7), rng.integers(1, 9, 7).astype(float)], axis=1), np.ones(2))
-        split_of, gap = assign(sizes, _SHARES, fixed=np.full(7, -1), rng=rng)
-        best = min(objective(sizes, np.array(choice), _SHARES) for choice in itertools.product(range(3), repeat=7))
-        assert best <= gap + 1e-12
-        assert gap <= best + 0.02
+        free = np.full(7, -1)
+        split_of, gap = assign(sizes, _SHARES, fixed=free, rng=rng)
+        reached, best = objective(sizes, split_of, _SHARES), _best(sizes, free)
+        assert best <= reached + 1e-12
+        assert reached <= best + 0.02
+        assert gap >= reached - best - 1e-12
         assert set(split_of.tolist()) <= {0, 1, 2}
+
+
+@pytest.mark.parametrize("giant", [1, 20, 200])
+def test_the_bound_is_below_the_best_of_all(giant: int) -> None:
+    rng = np.random.default_rng(giant)
+    for _ in range(10):
+        photos = np.append(rng.integers(1, 9, 5), giant).astype(float)
+        sizes = Sizes(np.stack([np.ones(6), photos], axis=1), np.array([1.0, 0.5]))
+        fixed = np.where(rng.random(6) < 0.3, rng.integers(0, 3, 6), -1)
+        assert bound(sizes, _SHARES, fixed) <= _best(sizes, fixed) + 1e-12
+        assert giant < 200 or bound(sizes, _SHARES, fixed) > 0.01
 
 
 def test_fixed_groups_stay() -> None:
@@ -107,3 +125,9 @@ def test_a_split_of_no_share_gets_nothing() -> None:
     sizes = Sizes(np.ones((9, 1)), np.ones(1))
     split_of, _ = assign(sizes, np.array([1.0, 0.0]), fixed=np.full(9, -1), rng=np.random.default_rng(0))
     assert set(split_of.tolist()) == {0}
+
+
+def test_annotators_who_disagree_tie_what_they_disagree_on() -> None:
+    settled = Settled({}, {}, contested_pairs=(("i00/0", "i01/0"),))
+    (tie,) = ties(_roll([1, 1], []), [], [], settled, [])
+    assert (tie.a, tie.b, tie.why) == ("i00", "i01", "annotators who disagree")
