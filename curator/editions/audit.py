@@ -1,63 +1,52 @@
 """The audit: digests, contradictions, leaks and balance of any pair list, recomputed from the files alone.
 
-Imports nothing of the sampler, the splits, the echoes or the writers, and hashes photos with imagehash itself.
+Imports nothing of the sampler, the splits, the echoes or the writers.
 """
 
 from __future__ import annotations
 
-import hashlib
 from collections import defaultdict
-from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass, field
+from collections.abc import Callable, Iterable, Sequence
 from pathlib import Path
 
-import imagehash
-from PIL import Image, ImageOps
-
+from curator.editions.audit_bag import audit_bag
+from curator.editions.audit_photos import look_at
 from curator.editions.audit_reading import Collected, Row, read_any
+from curator.editions.audit_report import AuditReport, Fault
 from curator.errors import BadInput
 
-_MOST_ROWS = 20
-"""Rows listed with a fault; all are counted."""
 _LOPSIDED = 0.05
 """Share by which mated and non-mated rows of a list may differ."""
 
 
-@dataclass(frozen=True)
-class Fault:
-    kind: str
-    detail: str
-    rows: tuple[str, ...] = ()
+def _nothing() -> None:
+    pass
 
 
-@dataclass
-class AuditReport:
-    faults: list[Fault] = field(default_factory=list)
-    checked: dict[str, int] = field(default_factory=dict)
-
-    @property
-    def sound(self) -> bool:
-        return not self.faults
-
-    def found(self, kind: str, what: str, rows: Sequence[str]) -> None:
-        """Note a fault, if there are any rows of it."""
-        if rows:
-            self.faults.append(Fault(kind, f"{len(rows)} {what}", tuple(rows[:_MOST_ROWS])))
-
-
-def audit_path(path: Path, *, photos: Path | None = None, echoes: Iterable[tuple[str, ...]] = ()) -> AuditReport:
+def audit_path(
+    path: Path,
+    *,
+    photos: Path | None = None,
+    echoes: Iterable[tuple[str, ...]] = (),
+    looked: Callable[[], None] = _nothing,
+) -> AuditReport:
     """Audit what lies at `path`; `photos` is the photo root, `echoes` groups of photos known to show one shot.
 
-    Raises `BadInput` where `path` is no list at all.
+    `looked` is called after each photo, and may raise to stop. Raises `BadInput` where `path` is no list at all.
     """
     if photos is not None and not photos.is_dir():
         raise BadInput(f"{photos} is no folder of photos.")
     report = AuditReport()
     if (path / "bagit.txt").is_file():
-        _bag(path, report)
-    collected = read_any(path)
+        audit_bag(path, report)
+    broken: list[str] = []
+    collected = read_any(path, broken.append)
+    report.found("unreadable-file", "files of the edition cannot be read", broken)
     report.checked |= {"lists": len(collected.lists), "rows": len(collected.rows)}
+    if collected.triplets:
+        report.checked["triplets"] = len(collected.triplets)
     _pairs(collected.rows, report)
+    _triplets(collected, report)
     _labels(collected, report)
     _balance(collected.rows, report)
     _identity_leaks(collected, report)
@@ -67,35 +56,12 @@ def audit_path(path: Path, *, photos: Path | None = None, echoes: Iterable[tuple
     _shot_leaks(collected, same_bytes.values(), "leak-identical-photo", "identical photos", report)
     _shot_leaks(collected, [set(group) for group in echoes], "leak-echo", "echoes", report)
     if photos is not None:
-        _against_photos(collected, photos, report)
+        _against_photos(collected, photos, looked, report)
     return report
 
 
-def _bag(path: Path, report: AuditReport) -> None:
-    """The bag's own manifests, by RFC 8493: every payload file listed, present and unchanged."""
-    for manifest, folder in (("manifest-sha256.txt", "data"), ("tagmanifest-sha256.txt", "")):
-        listed: dict[str, str] = {}
-        try:
-            lines = (path / manifest).read_text(encoding="utf-8").splitlines()
-        except (OSError, UnicodeDecodeError):
-            report.faults.append(Fault("missing-file", f"{manifest} is missing or unreadable"))
-            continue
-        for line in lines:
-            digest, _, name = line.partition("  ")
-            listed[name] = digest
-        changed, missing = [], []
-        for name, digest in listed.items():
-            try:
-                if hashlib.sha256((path / name).read_bytes()).hexdigest() != digest:
-                    changed.append(name)
-            except OSError:
-                missing.append(name)
-        report.found("digest-mismatch", f"files are not what {manifest} says", changed)
-        report.found("missing-file", f"files of {manifest} are missing", missing)
-        if folder:
-            present = (file.relative_to(path).as_posix() for file in (path / folder).rglob("*") if file.is_file())
-            report.found("extra-file", "files are in no manifest", sorted(set(present) - set(listed)))
-        report.checked[manifest] = len(listed)
+def _everything(collected: Collected) -> list[Row]:
+    return [*collected.rows, *collected.triplet_rows]
 
 
 def _pairs(rows: Sequence[Row], report: AuditReport) -> None:
@@ -114,8 +80,20 @@ def _pairs(rows: Sequence[Row], report: AuditReport) -> None:
     report.found("contradictory-pair", "pairs bear both labels", contradicting)
 
 
+def _triplets(collected: Collected, report: AuditReport) -> None:
+    seen: dict[tuple[str, str, str], str] = {}
+    repeated = []
+    for *names, where in collected.triplets:
+        first = seen.setdefault((names[0], names[1], names[2]), where)
+        if first != where:
+            repeated.append(f"{where} ({first})")
+    report.found("repeated-triplet", "triplets stand twice", repeated)
+    itself = [row.where for row in collected.triplet_rows if row.a == row.b]
+    report.found("self-pair", "triplets hold a photo twice", itself)
+
+
 def _labels(collected: Collected, report: AuditReport) -> None:
-    rows = collected.rows
+    rows = _everything(collected)
     report.found(
         "mated-across-identities",
         "mated pairs reach across identities",
@@ -133,7 +111,7 @@ def _labels(collected: Collected, report: AuditReport) -> None:
             for row in rows
             if told.get(row.a) != (row.identity_a, row.split) or told.get(row.b) != (row.identity_b, row.split)
         ]
-        report.found("photo-mismatch", "pairs do not agree with photos.parquet", strange)
+        report.found("photo-mismatch", "rows do not agree with photos.parquet", strange)
 
 
 def _balance(rows: Sequence[Row], report: AuditReport) -> None:
@@ -147,7 +125,7 @@ def _balance(rows: Sequence[Row], report: AuditReport) -> None:
 
 def _identity_leaks(collected: Collected, report: AuditReport) -> None:
     splits, folds = defaultdict(set), defaultdict(set)
-    for row in collected.rows:
+    for row in _everything(collected):
         for identity in (row.identity_a, row.identity_b):
             splits[identity].add(row.split)
             if row.fold >= 0:
@@ -164,10 +142,7 @@ def _identity_leaks(collected: Collected, report: AuditReport) -> None:
 
 def _shot_leaks(collected: Collected, groups: Iterable[set[str]], kind: str, words: str, report: AuditReport) -> None:
     """Photos that show one shot: in two splits they leak, as a mated pair they teach nothing."""
-    splits = defaultdict(set)
-    for row in collected.rows:
-        splits[row.a].add(row.split)
-        splits[row.b].add(row.split)
+    splits = _splits_of_photos(collected)
     group_of: dict[str, list[int]] = defaultdict(list)
     across = []
     for number, group in enumerate(groups):
@@ -179,58 +154,37 @@ def _shot_leaks(collected: Collected, groups: Iterable[set[str]], kind: str, wor
     report.found(kind, f"groups of {words} reach across splits", sorted(across))
     trivial = [
         row.where
-        for row in collected.rows
+        for row in _everything(collected)
         if row.a != row.b and set(group_of.get(row.a, ())) & set(group_of.get(row.b, ()))
     ]
     report.found("trivial-pair", f"pairs are of {words}", trivial)
 
 
-def _against_photos(collected: Collected, root: Path, report: AuditReport) -> None:
-    """The photos themselves: there, unchanged, and no two of one shot in two splits."""
-    named = sorted({photo for row in collected.rows for photo in (row.a, row.b)})
-    missing, changed = [], []
-    bytes_of, hash_of = defaultdict(set), defaultdict(set)
-    for photo in named:
-        try:
-            data = (root / photo).read_bytes()
-        except OSError:
-            missing.append(photo)
-            continue
-        digest = hashlib.sha256(data).hexdigest()
-        if collected.photo_digests.get(photo, digest) != digest:
-            changed.append(photo)
-        bytes_of[digest].add(photo)
-        code = _code(root / photo)
-        if code is not None:
-            hash_of[code].add(photo)
-    report.checked["photos"] = len(named)
-    report.found("missing-photo", "photos are not in the photo root", missing)
-    report.found("changed-photo", "photos are no longer what the edition says", changed)
-    if not collected.photo_digests:
-        _shot_leaks(collected, bytes_of.values(), "leak-identical-photo", "identical photos", report)
-    _equal_hash_leaks(collected, hash_of, report)
-
-
-def _equal_hash_leaks(collected: Collected, hash_of: Mapping[str, set[str]], report: AuditReport) -> None:
-    """Equal DCT hashes in two splits: re-encoded or resized copies keep theirs, other photos hardly ever share one."""
+def _splits_of_photos(collected: Collected) -> dict[str, set[str]]:
     splits = defaultdict(set)
-    for row in collected.rows:
+    for row in _everything(collected):
         splits[row.a].add(row.split)
         splits[row.b].add(row.split)
+    return splits
+
+
+def _against_photos(collected: Collected, root: Path, looked: Callable[[], None], report: AuditReport) -> None:
+    """The photos themselves: there, unchanged, and no two of one shot in two splits."""
+    splits = _splits_of_photos(collected)
+    seen = look_at(sorted(splits), root, looked)
+    report.checked["photos"] = len(splits)
+    told = collected.photo_digests
+    changed = [photo for photo, digest in seen.digests.items() if told.get(photo, digest) != digest]
+    report.found("missing-photo", "photos are not in the photo root", seen.missing)
+    report.found("changed-photo", "photos are no longer what the edition says", changed)
+    if not told:
+        same_bytes = defaultdict(set)
+        for photo, digest in seen.digests.items():
+            same_bytes[digest].add(photo)
+        _shot_leaks(collected, same_bytes.values(), "leak-identical-photo", "identical photos", report)
     across = [
         " = ".join(sorted(group))
-        for group in hash_of.values()
+        for group in seen.near
         if len({split for photo in group for split in splits[photo]}) > 1
     ]
-    report.found("leak-equal-hash", "groups of photos with one DCT hash reach across splits", sorted(across))
-
-
-def _code(path: Path) -> str | None:
-    """The DCT hash as text; None where the photo cannot be read or is flat."""
-    try:
-        with Image.open(path) as image:
-            upright = ImageOps.exif_transpose(image).convert("RGB")
-    except (OSError, ValueError, Image.DecompressionBombError):
-        return None
-    low, high = upright.convert("L").getextrema()
-    return None if low == high else str(imagehash.phash(upright))
+    report.found("leak-near-copy", "groups of photos with like hashes reach across splits", sorted(across))

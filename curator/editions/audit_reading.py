@@ -6,13 +6,19 @@ Shares no code with what writes them: a fault of the writer must not hide itself
 from __future__ import annotations
 
 import csv
+import io
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
 from pathlib import Path, PurePosixPath
+from typing import Any
 
 import pyarrow
 import pyarrow.parquet
 
 from curator.errors import BadInput
+
+_PAIR = ("photo_a", "photo_b", "label")
+_TRIPLET = ("anchor", "positive", "negative")
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,6 +40,11 @@ class Collected:
     """Everything an audit looks at."""
 
     rows: list[Row] = field(default_factory=list)
+    """Of pair lists."""
+    triplet_rows: list[Row] = field(default_factory=list)
+    """Of triplet lists, two each: anchor and positive, anchor and negative."""
+    triplets: list[tuple[str, str, str, str]] = field(default_factory=list)
+    """Anchor, positive, negative, and where they stand."""
     lists: list[str] = field(default_factory=list)
     photo_digests: dict[str, str] = field(default_factory=dict)
     """Photo to SHA-256, where the edition tells."""
@@ -41,12 +52,15 @@ class Collected:
     """Photo to identity and split, where the edition tells."""
 
 
-def read_any(path: Path) -> Collected:
-    """Read an edition folder, a folder of lists, or a single list. Raises `BadInput`."""
+def read_any(path: Path, broken: Callable[[str], None]) -> Collected:
+    """Read an edition folder, a folder of lists, or a single list. Raises `BadInput`.
+
+    Of an edition what cannot be read is a finding, not bad input: `broken` is told of it.
+    """
     if (path / "bagit.txt").is_file():
-        return _edition(path)
+        return _edition(path, broken)
     if path.is_dir():
-        files = sorted(file for file in path.iterdir() if file.suffix in (".csv", ".parquet", ".txt"))
+        files = _lists_in(path)
         if not files:
             raise BadInput(f"{path} holds neither an edition nor pair lists.")
         collected = Collected()
@@ -64,45 +78,96 @@ def _split_name(file: Path) -> str:
     return file.name.partition(".")[0]
 
 
-def _edition(path: Path) -> Collected:
-    collected = Collected()
-    folder = path / "data" / "pairs"
+def _lists_in(folder: Path) -> list[Path]:
+    """The lists of a folder. Of several formats of one list Parquet, which keeps types, goes before CSV and text."""
     chosen: dict[str, Path] = {}
-    for file in sorted(folder.iterdir()) if folder.is_dir() else ():
-        # One of several formats of one list: Parquet, which sorts after CSV, keeps its types.
-        if file.suffix in (".csv", ".parquet"):
-            chosen[file.stem] = file
-    for split, file in chosen.items():
-        _list(file, collected, split)
-    table = _parquet(path / "data" / "photos.parquet", ("photo", "sha256", "identity", "split"))
-    for photo, digest, identity, split in zip(*table, strict=True):
+    for suffix in (".txt", ".csv", ".parquet"):
+        chosen |= {_split_name(file): file for file in folder.glob(f"*{suffix}")} if folder.is_dir() else {}
+    return sorted(chosen.values())
+
+
+def _edition(path: Path, broken: Callable[[str], None]) -> Collected:
+    collected = Collected()
+    for file in (*_lists_in(path / "data" / "pairs"), *_lists_in(path / "data" / "triplets")):
+        try:
+            _list(file, collected, _split_name(file))
+        except BadInput as error:
+            broken(str(error))
+    try:
+        table = _parquet(path / "data" / "photos.parquet")
+        wanted = _columns(table, path / "data" / "photos.parquet", ("photo", "sha256", "identity", "split"))
+    except BadInput as error:
+        broken(str(error))
+        return collected
+    for photo, digest, identity, split in zip(*wanted, strict=True):
         collected.photo_digests[photo] = digest
         collected.photo_splits[photo] = (identity, split)
     return collected
 
 
 def _list(file: Path, collected: Collected, split: str) -> None:
-    collected.lists.append(file.name)
     if file.suffix == ".parquet":
-        names = ("photo_a", "photo_b", "label", "identity_a", "identity_b", "fold")
-        for number, values in enumerate(zip(*_parquet(file, names), strict=True), 1):
-            a, b, label, identity_a, identity_b, fold = values
-            where = f"{file.name} row {number}"
-            collected.rows.append(Row(a, b, identity_a, identity_b, _mated(str(label), where), split, int(fold), where))
+        table = _parquet(file)
+        keys = _TRIPLET if "anchor" in table else _PAIR
+        _columns(table, file, keys[:3])
+        rows = (dict(zip(table, values, strict=True)) for values in zip(*table.values(), strict=True))
+        _rows(enumerate(rows, 1), f"{file.name} row", collected, split)
     elif file.suffix == ".csv":
         _csv(file, collected, split)
     else:
         _lfw(file, collected, split)
+    collected.lists.append(file.name)
 
 
-def _parquet(file: Path, columns: tuple[str, ...]) -> list[list[str]]:
+def _rows(rows: Iterable[tuple[int, Mapping[str, Any]]], where: str, collected: Collected, split: str) -> None:
+    """Rows of a table, by whichever columns it has. Raises `BadInput` naming the row."""
+    for number, row in rows:
+        here = f"{where} {number}"
+        held = str(row.get("split") or split)
+        if "anchor" in row:
+            _triplet(row, here, collected, held)
+            continue
+        a, b = _photo(row, "photo_a", here), _photo(row, "photo_b", here)
+        owners = str(row.get("identity_a") or _folder(a)), str(row.get("identity_b") or _folder(b))
+        fold = row.get("fold")
+        try:
+            in_fold = -1 if fold in (None, "") else int(str(fold))
+        except ValueError as error:
+            raise BadInput(f"{here}: the fold '{fold}' is no number.") from error
+        label = _mated(str(row["label"]), here)
+        collected.rows.append(Row(a, b, *owners, label, held, in_fold, here))
+
+
+def _triplet(row: Mapping[str, Any], here: str, collected: Collected, split: str) -> None:
+    a, p, n = (_photo(row, key, here) for key in _TRIPLET)
+    own, other = str(row.get("identity") or _folder(a)), str(row.get("negative_identity") or _folder(n))
+    # A list that names the identities names one for both ends of its mated half.
+    positive_own = own if row.get("identity") else _folder(p)
+    collected.triplets.append((a, p, n, here))
+    collected.triplet_rows.append(Row(a, p, own, positive_own, True, split, -1, here))
+    collected.triplet_rows.append(Row(a, n, own, other, False, split, -1, here))
+
+
+def _photo(row: Mapping[str, Any], key: str, here: str) -> str:
+    if not row[key]:
+        raise BadInput(f"{here}: a photo is missing.")
+    return str(row[key])
+
+
+def _parquet(file: Path) -> dict[str, list[Any]]:
     try:
-        table = pyarrow.parquet.read_table(file)
-        return [table[name].to_pylist() for name in columns]
-    except (OSError, pyarrow.ArrowException) as error:
+        # Not read_table, which takes folders called name=value for columns.
+        table = pyarrow.parquet.ParquetFile(file).read()
+        return {name: table[name].to_pylist() for name in table.column_names}
+    except (OSError, ValueError, KeyError, pyarrow.ArrowException) as error:
         raise BadInput(f"{file} could not be read as Parquet: {error}.") from error
-    except KeyError as error:
-        raise BadInput(f"{file} lacks the column {error}.") from error
+
+
+def _columns(table: Mapping[str, list[Any]], file: Path, names: tuple[str, ...]) -> list[list[Any]]:
+    for name in names:
+        if name not in table:
+            raise BadInput(f"{file} lacks the column '{name}'.")
+    return [table[name] for name in names]
 
 
 def _text(file: Path) -> str:
@@ -115,23 +180,15 @@ def _text(file: Path) -> str:
 
 
 def _csv(file: Path, collected: Collected, split: str) -> None:
-    reader = csv.DictReader(_text(file).splitlines(keepends=True), strict=True)
-    lacking = {"photo_a", "photo_b", "label"} - set(reader.fieldnames or ())
-    if lacking:
-        raise BadInput(f"{file} lacks the column '{min(lacking)}'.")
+    reader = csv.DictReader(io.StringIO(_text(file), newline=""), strict=True)
     try:
-        for row in reader:
-            where = f"{file.name} line {reader.line_num}"
-            a, b = row["photo_a"] or "", row["photo_b"] or ""
-            if not a or not b:
-                raise BadInput(f"{where}: a photo is missing.")
-            owners = (row.get("identity_a") or _folder(a), row.get("identity_b") or _folder(b))
-            fold = int(row.get("fold") or -1)
-            collected.rows.append(Row(a, b, *owners, _mated(row["label"] or "", where), split, fold, where))
+        names = reader.fieldnames or ()
+        lacking = set(_TRIPLET if "anchor" in names else _PAIR) - set(names)
+        if lacking:
+            raise BadInput(f"{file} lacks the column '{min(lacking)}'.")
+        _rows(((reader.line_num, row) for row in reader), f"{file.name} line", collected, split)
     except csv.Error as error:
         raise BadInput(f"{file}, line {reader.line_num}: not valid CSV ({error}).") from error
-    except ValueError as error:
-        raise BadInput(f"{file}, line {reader.line_num}: the fold is no number.") from error
 
 
 def _mated(label: str, where: str) -> bool:
@@ -145,7 +202,7 @@ def _folder(photo: str) -> str:
 
 
 def _lfw(file: Path, collected: Collected, split: str) -> None:
-    lines = [line.split("\t") for line in _text(file).splitlines() if line.strip()]
+    lines = [line.rstrip("\r").split("\t") for line in _text(file).split("\n") if line.strip()]
     header = lines[0] if lines else []
     if not 1 <= len(header) <= 2 or not all(part.strip().isdigit() for part in header):
         raise BadInput(f"{file} lacks the first line 'sets<TAB>pairs'; copies without it cannot be divided into sets.")

@@ -39,9 +39,12 @@ def write_bag(out: Path, payload: Mapping[str, bytes], info: Mapping[str, str]) 
         beside.mkdir(mode=0o700)
         for name, data in files.items():
             _write(beside / name, data)
+        for folder in {(beside / name).parent for name in files}:
+            _sync_folder(folder)
         if out.exists():
             out.rmdir()
         beside.rename(out)
+        _sync_folder(out.parent)
     except OSError as error:
         raise EnvironmentFailed(f"The edition could not be written to {out}: {error.strerror}.") from error
     finally:
@@ -61,3 +64,13 @@ def _write(path: Path, data: bytes) -> None:
         file.write(data)
         file.flush()
         os.fsync(file.fileno())
+
+
+def _sync_folder(folder: Path) -> None:
+    """Put a folder's entries on disk too, where the system can: a file alone is lost with its name."""
+    if os.name == "posix":
+        descriptor = os.open(folder, os.O_RDONLY)
+        try:
+            os.fsync(descriptor)
+        finally:
+            os.close(descriptor)

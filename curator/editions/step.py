@@ -18,7 +18,8 @@ from curator.doubts.step import find_doubts
 from curator.echoes.step import find_echoes
 from curator.editions import lists as _lists
 from curator.editions.assembling import assemble, use_of_identities
-from curator.editions.audit import AuditReport, audit_path
+from curator.editions.audit import audit_path
+from curator.editions.audit_report import AuditReport
 from curator.editions.bag import check_target, write_bag
 from curator.editions.croissant import UNDATED, croissant_bytes
 from curator.editions.exclusions import left_out, usable
@@ -91,14 +92,16 @@ def write_edition(ledger: Ledger, recipe: Recipe, recipe_text: str, out: Path, *
             "External-Identifier": f"edition {number}",
         }
         digest = write_bag(out, payload, info)
+        # What was written is judged by the same eyes as any other list.
+        audited = audit_path(out, echoes=[group.photos for group in material.echoes])
         ledger.put_edition(path=str(out), data_digest=digest, seed=recipe.split.seed, recipe_text=recipe_text)
     return EditionReport(
         path=out,
         number=number,
         lists=standing["lists"],
         expected_wrong_labels=standing["expected_wrong_labels"],
-        leaks=split.leaks,
-        shortfalls=tuple(made.shortfalls),
+        leaks=split.leaks + sum(fault.kind.startswith("leak-") for fault in audited.faults),
+        shortfalls=(*made.shortfalls, *(f"audit: {fault.kind}: {fault.detail}" for fault in audited.faults)),
         owed_reviews=made.owed,
         left_out=dict(sorted(counted.items())),
         data_digest=digest,
@@ -107,11 +110,16 @@ def write_edition(ledger: Ledger, recipe: Recipe, recipe_text: str, out: Path, *
 
 def audit(path: Path, *, photos: Path | None = None, ledger: Ledger | None = None, progress: Progress) -> AuditReport:
     """Check an edition or pair list from its files alone; with `photos` the photos too, with `ledger` its echoes."""
-    progress.begin("auditing", None)
     known: tuple[tuple[str, ...], ...] = ()
     if ledger is not None:
         known = tuple(group.photos for group in find_echoes(ledger, progress=progress))
-    return audit_path(path, photos=photos, echoes=known)
+    progress.begin("auditing", None)
+
+    def looked() -> None:
+        stop_if_wanted(progress)
+        progress.advance()
+
+    return audit_path(path, photos=photos, echoes=known, looked=looked)
 
 
 def _standing(

@@ -15,7 +15,7 @@ def kept_splits(edition: Path) -> dict[str, str]:
     path = edition / "data" / "photos.parquet"
     try:
         table = pyarrow.parquet.read_table(path, columns=["identity", "split"])
-    except (OSError, KeyError, pyarrow.ArrowException) as error:
+        pairs = list(zip(table["identity"].to_pylist(), table["split"].to_pylist(), strict=True))
+    except (OSError, ValueError, KeyError, pyarrow.ArrowException) as error:
         raise BadInput(f"{edition} is no edition whose splits could be kept: {path} could not be read.") from error
-    pairs = zip(table["identity"].to_pylist(), table["split"].to_pylist(), strict=True)
     return {str(identity): str(split) for identity, split in pairs if split}

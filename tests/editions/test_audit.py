@@ -74,9 +74,9 @@ def test_leaks_and_losses_seen_from_the_photos_alone(tmp_path: Path) -> None:
     assert _kinds(lists, photos=root) == {"missing-photo"}
     (root / "d").mkdir()
     (root / "d" / "1.jpg").write_bytes((root / "a" / "2.jpg").read_bytes())
-    assert _kinds(lists, photos=root) == {"leak-identical-photo", "leak-equal-hash"}
+    assert _kinds(lists, photos=root) == {"leak-identical-photo", "leak-near-copy"}
     Image.open(root / "a" / "2.jpg").resize((200, 200)).save(root / "d" / "1.jpg", quality=95)
-    assert _kinds(lists, photos=root) == {"leak-equal-hash"}
+    assert _kinds(lists, photos=root) == {"leak-near-copy"}
 
 
 def test_lfw_text(tmp_path: Path) -> None:
@@ -122,3 +122,72 @@ def test_an_edition_that_was_touched(made_ledger: Callable[..., Ledger], recipe_
     assert _kinds(out) == {"digest-mismatch"}
     (out / "data" / "verdicts.csv").unlink()
     assert _kinds(out) == {"missing-file"}
+    (out / "data" / "verdicts.csv").write_bytes(whole)
+    for name in ("photos.parquet", "pairs/train.parquet", "triplets/train.parquet"):
+        whole = (out / "data" / name).read_bytes()
+        (out / "data" / name).write_bytes(whole[:40] + b"no more")
+        assert _kinds(out) == {"digest-mismatch", "unreadable-file"}
+        (out / "data" / name).unlink()
+        assert "missing-file" in _kinds(out)
+        (out / "data" / name).write_bytes(whole)
+    manifest = out / "manifest-sha256.txt"
+    manifest.write_text(manifest.read_text() + f"{'0' * 64}  ../../outside\n")
+    assert _kinds(out) == {"digest-mismatch", "outside-file"}
+
+
+_TRIPLETS = ["a/1.jpg,a/2.jpg,b/1.jpg", "b/1.jpg,b/2.jpg,a/1.jpg"]
+
+
+def _triplets(path: Path, rows: list[str]) -> Path:
+    path.write_text("\n".join(["anchor,positive,negative", *rows]) + "\n")
+    return path
+
+
+@pytest.mark.parametrize(
+    ("row", "kind"),
+    [
+        ("b/1.jpg,b/2.jpg,c/1.jpg", None),
+        ("b/1.jpg,b/2.jpg,a/1.jpg", "repeated-triplet"),
+        ("a/1.jpg,a/1.jpg,b/1.jpg", "self-pair"),
+        ("a/1.jpg,b/2.jpg,c/1.jpg", "mated-across-identities"),
+        ("a/1.jpg,a/2.jpg,a/3.jpg", "non-mated-within-identity"),
+    ],
+)
+def test_triplets_are_audited_too(tmp_path: Path, row: str, kind: str | None) -> None:
+    path = _triplets(tmp_path / "train.csv", [*_TRIPLETS, row])
+    assert _kinds(path) == ({kind} if kind else set())
+    assert audit_path(path).checked == {"lists": 1, "rows": 0, "triplets": 3}
+
+
+def test_a_triplet_list_and_a_pair_list_may_leak_into_each_other(tmp_path: Path) -> None:
+    _triplets(tmp_path / "train.csv", _TRIPLETS)
+    _csv(tmp_path / "test.csv", ["c/1.jpg,c/2.jpg,1", "c/1.jpg,b/9.jpg,0"])
+    assert _kinds(tmp_path) == {"leak-identity"}
+
+
+def test_one_list_may_name_its_splits(tmp_path: Path) -> None:
+    path = tmp_path / "all.csv"
+    rows = ["a/1.jpg,a/2.jpg,1,train", "a/1.jpg,b/1.jpg,0,train", "c/1.jpg,c/2.jpg,1,test", "c/1.jpg,{}/1.jpg,0,test"]
+    for stranger, kinds in (("d", set()), ("b", {"leak-identity"})):
+        path.write_text("\n".join(["photo_a,photo_b,label,split", *rows]).format(stranger))
+        assert _kinds(path) == kinds
+
+
+def test_of_two_formats_of_one_list_one_is_read(made_ledger: Callable[..., Ledger], recipe_text: str,
+                                                tmp_path: Path) -> None:  # fmt: skip
+    # A folder called name=value must not be taken for a column.
+    out = tmp_path / "split=x"
+    with made_ledger() as ledger:
+        write_edition(ledger, parse_recipe(recipe_text), recipe_text, out, progress=Silent())
+    assert _kinds(out / "data" / "pairs") == set()
+    assert audit_path(out / "data" / "pairs").checked == {"lists": 3, "rows": 144}
+    assert _kinds(out) == set()
+
+
+def test_names_with_odd_line_breaks_are_one_name(tmp_path: Path) -> None:
+    odd = [f"a{mark}/1.jpg,a{mark}/2.jpg,1" for mark in ("\u2028", "\x85", "\x0b", "\x1c")]
+    even = [f"a{mark}/1.jpg,b/1.jpg,0" for mark in ("\u2028", "\x85", "\x0b", "\x1c")]
+    report = audit_path(_csv(tmp_path / "pairs.csv", [*odd, *even]))
+    assert (report.faults, report.checked["rows"]) == ([], 8)
+    quoted = ['"a, ""b""\r\nc/1.jpg","a, ""b""\r\nc/2.jpg",1', '"a, ""b""\r\nc/1.jpg",d/1.jpg,0']
+    assert audit_path(_csv(tmp_path / "pairs.csv", quoted)).sound
