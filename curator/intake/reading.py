@@ -13,7 +13,7 @@ from curator.intake.framing import FindFaces, frame
 from curator.intake.hashes import dct_hash, difference_hash, mirror_hash
 from curator.intake.measures import measure
 
-VERSION = "reading-2"
+VERSION = "reading-3"
 """Raise it when what is read from the same bytes changes: the next intake then reads everything again."""
 _THUMBNAIL_QUALITY = 88
 

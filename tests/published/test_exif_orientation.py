@@ -29,3 +29,17 @@ def test_photos_are_turned_upright(orientation: int) -> None:
     buffer = io.BytesIO()
     image.save(buffer, "PNG", exif=exif)
     assert decode(buffer.getvalue())[:, :, 0].tolist() == _UPRIGHT[orientation]
+
+
+@pytest.mark.parametrize("kind", ["JPEG", "TIFF", "WEBP"])
+@pytest.mark.parametrize("orientation", list(_UPRIGHT))
+def test_whatever_the_format(kind: str, orientation: int) -> None:
+    # Blocks of 16, so that lossy formats keep their values.
+    image = Image.fromarray(np.array(_STORED, dtype=np.uint8).repeat(16, axis=0).repeat(16, axis=1))
+    exif = Image.Exif()
+    exif[0x0112] = orientation
+    buffer = io.BytesIO()
+    image.save(buffer, kind, exif=exif, quality=100)
+    middles = decode(buffer.getvalue())[8::16, 8::16, 0].astype(int)
+    assert middles.shape == np.shape(_UPRIGHT[orientation])
+    assert np.abs(middles - _UPRIGHT[orientation]).max() <= 3
