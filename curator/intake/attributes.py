@@ -53,7 +53,9 @@ def read_attributes(path: Path, files: Sequence[PhotoFile]) -> Attributes:
         if len(row) != len(names):
             raise BadInput(f"The attributes {path} have {len(row)} fields in line {line}, not {len(names)}.")
         told = dict(zip(names, row, strict=True))
-        about = unicodedata.normalize("NFC", told.pop(key))
+        about = told.pop(key)
+        if about not in targets:  # a photo whose name had to give way is called as it is on disk
+            about = unicodedata.normalize("NFC", about)
         if about in seen:
             raise BadInput(f"The attributes {path} name {about} twice (line {line}).")
         seen.add(about)

@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 import multiprocessing
-import os
-import signal
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wait
@@ -13,6 +11,7 @@ from dataclasses import replace
 
 from curator.domain import PhotoFile, Reading
 from curator.intake.chunks import Result, Task
+from curator.intake.worker import settle_in
 
 DIED = "reading it ended the reading process"
 _AHEAD = 2
@@ -87,11 +86,4 @@ def _one_by_one(task: Task, read: ReadChunk) -> tuple[Result, tuple[str, ...]]:
 
 def _pool(workers: int) -> ProcessPoolExecutor:
     # Spawned, not forked: sessions and threads of the parent do not survive a fork.
-    return ProcessPoolExecutor(workers, mp_context=multiprocessing.get_context("spawn"), initializer=_settle_in)
-
-
-def _settle_in() -> None:
-    """In each worker: the parent alone answers Ctrl-C, and no library starts threads of its own."""
-    signal.signal(signal.SIGINT, signal.SIG_IGN)
-    for name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"):
-        os.environ[name] = "1"
+    return ProcessPoolExecutor(workers, mp_context=multiprocessing.get_context("spawn"), initializer=settle_in)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 import time
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping, Sequence, Set
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -18,9 +18,9 @@ from curator.errors import BadInput, Stopped
 from curator.intake import pool
 from curator.intake.attributes import read_attributes
 from curator.intake.chunks import CHUNK, Task, read_chunk
-from curator.intake.decoding import DEFAULT_PIXEL_LIMIT
+from curator.intake.decoding import DEFAULT_PIXEL_LIMIT, within_limit
 from curator.intake.reading import VERSION, Settings
-from curator.intake.walking import SIDECAR, walk
+from curator.intake.walking import SIDECAR, Walk, walk
 from curator.ledger import Ledger
 from curator.progress import Progress
 
@@ -54,7 +54,8 @@ def run(
 ) -> IntakeReport:
     """Read what is new or changed below `photos` into the ledger; go on where an earlier intake was interrupted.
 
-    Without `framing` and `card` the ledger's own are kept. Raises `BadInput`, `EnvironmentFailed`, `Stopped`.
+    Without `framing` and `card` the ledger's own are kept, and so are its attributes where none are given and the
+    photo root has no `attributes.csv`. Raises `BadInput`, `EnvironmentFailed`, `Stopped`.
     """
     started = time.monotonic()
     workers = workers if workers is not None else os.cpu_count() or 1
@@ -74,11 +75,15 @@ def run(
         # Before anything is removed, so that a mistake in the CSV changes nothing.
         told = _attributes(photos, attributes, found.files, progress)
         ledger.set_maker(maker, framing=framed, card=card or ledger.card or chosen.name)
-        fresh, removed = _sort_out(ledger, found.files, maker)
-        ledger.remove_files(removed)
-        ledger.put_attributes(told)
+        recorded, before = ledger.files(), ledger.digests_read(maker) - _refused_before(ledger, pixel_limit)
+        fresh, removed, renamed = _sort_out(recorded, before, found)
+        # A name may have passed from one file to another: those that lose theirs go first.
+        ledger.remove_files([*removed, *renamed])
+        if told is not None:
+            ledger.put_attributes(told)
         settings = Settings(framing=framed, size=chosen.size, pixel_limit=pixel_limit)
-        _read(ledger, photos, fresh, settings, chosen, maker, workers, progress, read)
+        tasks = _tasks(photos, fresh, settings, chosen, recorded, before, workers)
+        _read(ledger, tasks, maker, workers, progress, read)
     roll = ledger.roll()
     why = ledger.readings(roll).why
     return IntakeReport(
@@ -102,62 +107,70 @@ def _make_ready(card: Card, framing: str) -> None:
 
 def _attributes(
     photos: Path, given: Path | None, files: Sequence[PhotoFile], progress: Progress
-) -> dict[str, dict[str, str]]:
+) -> dict[str, dict[str, str]] | None:
     path = given or photos / SIDECAR
     if given is None and not path.is_file():
-        return {}
+        return None
     attributes = read_attributes(path, files)
     if attributes.unknown:
         progress.note(f"{attributes.unknown} rows of {path} name nothing on the roll.")
     return attributes.rows
 
 
-def _sort_out(ledger: Ledger, files: Sequence[PhotoFile], maker: str) -> tuple[list[PhotoFile], list[bytes]]:
-    """The files to read, and the raw names of those that are gone or now bear another name."""
-    recorded, read = ledger.files(), ledger.digests_read(maker)
-    fresh, removed = [], []
-    present = {file.raw: file for file in files}
-    for raw, known in recorded.items():
-        now = present.get(raw)
-        if now is None or now.name != known.name:
-            removed.append(raw)
-    gone = set(removed)
-    for file in files:
-        known_file = recorded.get(file.raw)
+def _refused_before(ledger: Ledger, pixel_limit: int) -> set[str]:
+    """Digests of photos that an earlier, lower pixel limit refused."""
+    roll = ledger.roll()
+    reasons = ledger.readings(roll).why
+    return {digest for digest, why in zip(roll.digests, reasons, strict=True) if why and within_limit(why, pixel_limit)}
+
+
+def _sort_out(
+    recorded: Mapping[bytes, PhotoFile], before: Set[str], found: Walk
+) -> tuple[list[PhotoFile], list[bytes], list[bytes]]:
+    """The files to read, the raw names of those that are gone, and of those that now bear another name."""
+    present = {file.raw: file for file in found.files}
+    removed = [raw for raw in recorded if raw not in present and not found.may_hold(raw)]
+    renamed = [raw for raw, known in recorded.items() if raw in present and present[raw].name != known.name]
+    others = set(renamed)
+    fresh = []
+    for file in found.files:
+        known = recorded.get(file.raw)
         same = (
-            known_file is not None
-            and file.raw not in gone
-            and (known_file.size, known_file.mtime_ns) == (file.size, file.mtime_ns)
-            and known_file.digest in read
+            known is not None
+            and file.raw not in others
+            and (known.size, known.mtime_ns) == (file.size, file.mtime_ns)
+            and known.digest in before
         )
         if not same:
             fresh.append(file)
-    return fresh, [raw for raw in removed if raw not in present]
+    return fresh, removed, renamed
 
 
-def _read(
-    ledger: Ledger,
+def _tasks(
     photos: Path,
     fresh: Sequence[PhotoFile],
     settings: Settings,
     card: Card,
-    maker: str,
+    recorded: Mapping[bytes, PhotoFile],
+    before: Set[str],
     workers: int,
-    progress: Progress,
-    read: pool.ReadChunk,
-) -> None:
-    progress.begin("reading photos", len(fresh))
-    recorded, before = ledger.files(), ledger.digests_read(maker)
-    root = os.fsencode(photos)
+) -> list[Task]:
     # Small intakes are cut finer, so that every worker has something to do.
     size = max(1, min(CHUNK, -(-len(fresh) // (workers * 2))))
     chunks = [tuple(fresh[at : at + size]) for at in range(0, len(fresh), size)]
 
     def known(chunk: tuple[PhotoFile, ...]) -> frozenset[str]:
         digests = (recorded[file.raw].digest for file in chunk if file.raw in recorded)
-        return frozenset(digest for digest in digests if digest in before and digest is not None)
+        return frozenset(digest for digest in digests if digest is not None and digest in before)
 
-    tasks = [Task(root, chunk, settings, card, known(chunk)) for chunk in chunks]
+    root = os.fsencode(photos)
+    return [Task(root, chunk, settings, card, known(chunk)) for chunk in chunks]
+
+
+def _read(
+    ledger: Ledger, tasks: Sequence[Task], maker: str, workers: int, progress: Progress, read: pool.ReadChunk
+) -> None:
+    progress.begin("reading photos", sum(len(task.files) for task in tasks))
     for result, died in pool.run(tasks, read, workers=workers, stop_wanted=progress.stop_wanted):
         ledger.put_chunk(result.files, result.readings, maker=maker)
         for name in died:
