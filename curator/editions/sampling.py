@@ -20,6 +20,8 @@ _SPARE = 6
 """Candidates drawn for each row wanted, so that bands, caps and trust have a choice."""
 _CAPS = 4
 """Mated candidates of one identity, as times its cap: of a person with a thousand photos the rest would be idle."""
+_ASKED = 2
+"""Photos asked for their nearest strangers, as times the rows wanted."""
 _NEAREST = 5
 
 
@@ -75,7 +77,8 @@ def non_mated_candidates(
     drawn_a = order[start[first] + rng.integers(0, 1 << 62, n) % count[first]]
     drawn_b = order[start[second] + rng.integers(0, 1 << 62, n) % count[second]]
     # Not of every photo: time would go with the square of the roll, for rows that are not wanted.
-    asked = photos if len(photos) <= n else np.sort(rng.choice(photos, n, replace=False))
+    most = rows * _ASKED
+    asked = photos if len(photos) <= most else np.sort(rng.choice(photos, most, replace=False))
     index, _ = nearest(
         embeddings[asked],
         embeddings[photos],

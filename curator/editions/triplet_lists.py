@@ -19,6 +19,8 @@ _ROUNDS = 12
 """How often anchors are gone through again for triplets that are still wanted."""
 _AHEAD = 2000
 """Anchors gone through at least in such a later round."""
+_IN_VAIN = 2
+"""A round that brings nothing ends the search, but not so early."""
 
 
 def sample_triplets(
@@ -50,7 +52,7 @@ def sample_triplets(
         at += ahead
         found = _with_negatives(material, recipe, photos, allowed, anchors[now], positives[now], rng)
         new = [triplet for triplet in dict.fromkeys(found) if triplet not in chosen]
-        if at > 2 * len(order) and not new:
+        if not new and (at > 2 * len(order) or number >= _IN_VAIN):
             break
         chosen |= dict.fromkeys(new[:lacking])
     if len(chosen) < wanted:
