@@ -1,4 +1,4 @@
-"""From a file's bytes to upright RGB pixels."""
+"""From a file's bytes to an upright RGB picture."""
 
 from __future__ import annotations
 
@@ -8,8 +8,6 @@ import warnings
 
 import numpy as np
 from PIL import Image, ImageOps, UnidentifiedImageError
-
-from curator.domain import Pixels
 
 DEFAULT_PIXEL_LIMIT = 89_478_485
 """Pixels above which a photo is not decoded; Pillow's own figure."""
@@ -25,8 +23,8 @@ class UndecodableError(Exception):
     """Why a file gave no picture, in a few words."""
 
 
-def decode(data: bytes, *, pixel_limit: int = DEFAULT_PIXEL_LIMIT) -> Pixels:
-    """The picture as (h, w, 3) uint8, turned upright by its EXIF orientation.
+def decode(data: bytes, *, pixel_limit: int = DEFAULT_PIXEL_LIMIT) -> Image.Image:
+    """The picture in mode RGB, turned upright by its EXIF orientation.
 
     The first frame of a moving picture; transparency over white; 16-bit and floating values scaled by their range.
     Raises `UndecodableError`.
@@ -45,8 +43,12 @@ def decode(data: bytes, *, pixel_limit: int = DEFAULT_PIXEL_LIMIT) -> Pixels:
                         f"{image.width} x {image.height} pixels are more than the limit of {pixel_limit}"
                     )
                 image.load()
-                upright = ImageOps.exif_transpose(image)
-                return np.asarray(_rgb(upright))
+                # In place: otherwise every photo that lies upright is copied.
+                ImageOps.exif_transpose(image, in_place=True)
+                picture = _rgb(image)
+                # What was said beside the pixels must not wander into a thumbnail.
+                picture.info = {}
+                return picture
     except UndecodableError:
         raise
     except UnidentifiedImageError as error:

@@ -26,14 +26,14 @@ class Framed:
     eye_distance: float | None = None
 
 
-def frame(rgb: Pixels, framing: str, size: int, find_faces: FindFaces | None) -> Framed:
-    """Frame an (h, w, 3) photo as `face`, `whole` or `box:left,top,width,height` (fractions) into side `size`."""
+def frame(image: Image.Image, framing: str, size: int, find_faces: FindFaces | None) -> Framed:
+    """Frame an RGB photo as `face`, `whole` or `box:left,top,width,height` (fractions) into side `size`."""
     if framing == "face" and find_faces is not None:
-        return _face(rgb, size, find_faces)
-    height, width = rgb.shape[:2]
+        return _face(np.asarray(image), size, find_faces)
+    width, height = image.size
     left, top, wide, high = (0.0, 0.0, 1.0, 1.0) if framing == "whole" else _fractions(framing)
     box = (left * width, top * height, wide * width, high * height)
-    return Framed(crop=_stretched(rgb, box, size), frame=box)
+    return Framed(crop=_stretched(image, box, size), frame=box)
 
 
 def _face(rgb: Pixels, size: int, find_faces: FindFaces) -> Framed:
@@ -64,8 +64,7 @@ def _fractions(framing: str) -> tuple[float, float, float, float]:
     return left, top, width, height
 
 
-def _stretched(rgb: Pixels, box: tuple[float, float, float, float], size: int) -> Pixels:
+def _stretched(image: Image.Image, box: tuple[float, float, float, float], size: int) -> Pixels:
     left, top, width, height = box
     bounds = (left, top, left + width, top + height)
-    image = Image.fromarray(rgb).resize((size, size), Image.Resampling.BILINEAR, box=bounds, reducing_gap=2.0)
-    return np.asarray(image)
+    return np.asarray(image.resize((size, size), Image.Resampling.BILINEAR, box=bounds, reducing_gap=2.0))

@@ -21,10 +21,18 @@ def packed(bits: Bools) -> int:
     return int.from_bytes(np.packbits(bits.ravel()).tobytes(), "big")
 
 
-def dct_hash(grey: Image.Image) -> int:
-    """64-bit DCT hash of a grey (mode L) picture."""
+def reduced(grey: Image.Image) -> Image.Image:
+    """A grey (mode L) picture at the size of the DCT hash: hashed or mirrored and hashed, it gives the same bits.
+
+    The resize is most of a hash's cost, and treats left and right alike: so it is done once for both hashes.
+    """
     side = _SIDE * _OVERSAMPLING
-    pixels = np.asarray(grey.resize((side, side), Image.Resampling.LANCZOS))
+    return grey.resize((side, side), Image.Resampling.LANCZOS)
+
+
+def dct_hash(grey: Image.Image) -> int:
+    """64-bit DCT hash of a grey (mode L) picture, reduced or not."""
+    pixels = np.asarray(reduced(grey))
     # The package imagehash uses, in the same order: a matrix product differs on flat and gradient pictures.
     low = scipy.fftpack.dct(scipy.fftpack.dct(pixels, axis=0), axis=1)[:_SIDE, :_SIDE]
     return packed(low > np.median(low))
@@ -37,5 +45,5 @@ def difference_hash(grey: Image.Image) -> int:
 
 
 def mirror_hash(grey: Image.Image) -> int:
-    """64-bit DCT hash of the mirrored picture."""
+    """64-bit DCT hash of the mirrored picture, reduced or not."""
     return dct_hash(ImageOps.mirror(grey))

@@ -7,8 +7,6 @@ from dataclasses import dataclass
 import numpy as np
 from PIL import Image
 
-from curator.domain import Pixels
-
 _SHARPNESS_SIDE = 150
 """The crop is brought to this size before sharpness is measured, so that photos of all sizes compare."""
 
@@ -21,8 +19,8 @@ class Measures:
     clipped: float
 
 
-def measure(grey: Image.Image, crop: Pixels) -> Measures:
-    """Measures of a photo from its grey picture (mode L) and its framed (h, w, 3) crop.
+def measure(grey: Image.Image, crop: Image.Image) -> Measures:
+    """Measures of a photo from its grey picture (mode L) and its framed crop (mode RGB).
 
     Sharpness is the variance of the Laplacian of the crop (Pech-Pacheco et al. 2000).
     """
@@ -38,8 +36,8 @@ def measure(grey: Image.Image, crop: Pixels) -> Measures:
     )
 
 
-def _sharpness(crop: Pixels) -> float:
-    image = Image.fromarray(crop).convert("L")
+def _sharpness(crop: Image.Image) -> float:
+    image = crop.convert("L")
     if image.size != (_SHARPNESS_SIDE, _SHARPNESS_SIDE):
         image = image.resize((_SHARPNESS_SIDE, _SHARPNESS_SIDE), Image.Resampling.BILINEAR)
     p = np.asarray(image, dtype=np.float64)

@@ -10,7 +10,7 @@ from PIL import Image
 from curator.domain import THUMBNAIL_SIDE, Pixels, Reading
 from curator.intake.decoding import UndecodableError, decode
 from curator.intake.framing import FindFaces, frame
-from curator.intake.hashes import dct_hash, difference_hash, mirror_hash
+from curator.intake.hashes import dct_hash, difference_hash, mirror_hash, reduced
 from curator.intake.measures import measure
 
 VERSION = "reading-3"
@@ -33,21 +33,21 @@ def read_photo(
 ) -> tuple[Reading, Pixels | None]:
     """The reading of a file's bytes, its embedding still missing, and the crop to embed (None where there is none)."""
     try:
-        rgb = decode(data, pixel_limit=settings.pixel_limit)
+        image = decode(data, pixel_limit=settings.pixel_limit)
     except UndecodableError as error:
         return Reading(digest=digest, why=str(error), file_bytes=len(data)), None
-    image = Image.fromarray(rgb)
     grey = image.convert("L")  # one conversion serves three hashes and the measures
-    framed = frame(rgb, settings.framing, settings.size, find_faces)
-    measures = measure(grey, framed.crop if framed.crop is not None else rgb)
+    small = reduced(grey)
+    framed = frame(image, settings.framing, settings.size, find_faces)
+    measures = measure(grey, image if framed.crop is None else Image.fromarray(framed.crop))
     reading = Reading(
         digest=digest,
         file_bytes=len(data),
         width=image.width,
         height=image.height,
-        dct=dct_hash(grey),
+        dct=dct_hash(small),
         difference=difference_hash(grey),
-        mirror=mirror_hash(grey),
+        mirror=mirror_hash(small),
         sharpness=measures.sharpness,
         brightness=measures.brightness,
         contrast=measures.contrast,

@@ -10,9 +10,15 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from PIL import Image
 
-from curator.intake.decoding import UndecodableError, decode, within_limit
+from curator.domain import Pixels
+from curator.intake import decoding
+from curator.intake.decoding import DEFAULT_PIXEL_LIMIT, UndecodableError, within_limit
 
 _LOSSLESS = ["PNG", "BMP", "TIFF", "PPM"]
+
+
+def decode(data: bytes, pixel_limit: int = DEFAULT_PIXEL_LIMIT) -> Pixels:
+    return np.asarray(decoding.decode(data, pixel_limit=pixel_limit))
 
 
 def _file(image: Image.Image, kind: str, **options: object) -> bytes:
@@ -46,6 +52,11 @@ def test_transparency_lies_over_white() -> None:
     image = Image.new("RGBA", (2, 1), (200, 0, 0, 255))
     image.putpixel((1, 0), (200, 0, 0, 0))
     assert decode(_file(image, "PNG")).tolist() == [[[200, 0, 0], [255, 255, 255]]]
+
+
+def test_nothing_but_pixels_is_taken_from_a_file(picture: Callable[..., Image.Image]) -> None:
+    data = _file(picture(4), "JPEG", comment=b"Oar 4, starboard", icc_profile=b"none" * 40, dpi=(72, 72))
+    assert decoding.decode(data).info == {}
 
 
 def test_a_colour_declared_transparent_is_white() -> None:

@@ -3,10 +3,12 @@
 import imagehash
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 from PIL import Image, ImageOps
 from sklearn.datasets import load_sample_images
 
-from curator.intake.hashes import dct_hash, difference_hash, mirror_hash
+from curator.intake.hashes import dct_hash, difference_hash, mirror_hash, reduced
 
 
 def _pictures() -> dict[str, Image.Image]:
@@ -36,6 +38,16 @@ def test_the_three_hashes_are_imagehashs(name: str, image: Image.Image) -> None:
     assert dct_hash(grey) == _number(imagehash.phash(image))
     assert difference_hash(grey) == _number(imagehash.dhash(image))
     assert mirror_hash(grey) == _number(imagehash.phash(ImageOps.mirror(image)))
+
+
+@settings(max_examples=150, deadline=None)
+@given(width=st.integers(1, 400), height=st.integers(1, 400), seed=st.integers(0, 2**32 - 1))
+def test_one_reduced_picture_serves_both_dct_hashes(width: int, height: int, seed: int) -> None:
+    rng = np.random.default_rng(seed)
+    image = Image.fromarray(rng.integers(0, 256, (height, width, 3), dtype=np.uint8))
+    small = reduced(image.convert("L"))
+    assert dct_hash(small) == _number(imagehash.phash(image))
+    assert mirror_hash(small) == _number(imagehash.phash(ImageOps.mirror(image)))
 
 
 def test_mirrored_copies_defeat_the_plain_hash_and_not_the_mirror_hash() -> None:
