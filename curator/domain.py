@@ -68,6 +68,16 @@ class PhotoAnswer(StrEnum):
     UNUSABLE = "unusable"
 
 
+class EchoAnswer(StrEnum):
+    """What a person may say of two photos that may show the same shot."""
+
+    KEEP_FIRST = "keep-first"
+    """The same shot: `photo_a` stays, `photo_b` is set aside as its echo."""
+    KEEP_BOTH = "keep-both"
+    """The same shot, and both may be used, never as a pair."""
+    NOT_AN_ECHO = "not-an-echo"
+
+
 class PairKind(StrEnum):
     """The kinds of mined pair."""
 
@@ -204,6 +214,33 @@ class Verdict:
     """ISO 8601 time with offset."""
     shown: str = ""
     """What the person was shown, as JSON; empty where it came from a file."""
+
+
+@dataclass(frozen=True, slots=True)
+class EchoVerdict:
+    """What one person said once of two photos that may show the same shot."""
+
+    photo_a: str
+    photo_b: str
+    answer: EchoAnswer
+    annotator: str
+    at: str
+    """ISO 8601 time with offset."""
+
+
+@dataclass(frozen=True, slots=True)
+class Act:
+    """What a person did in one go, with a name for it: what can be taken back and restored."""
+
+    number: int
+    name: str
+    annotator: str
+    at: str
+    """ISO 8601 time with offset."""
+    n: int
+    """How many things were said in it."""
+    standing: bool
+    """False once it was taken back."""
 
 
 @dataclass(frozen=True, slots=True)

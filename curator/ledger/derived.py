@@ -7,8 +7,10 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from curator.domain import Reading, Readings, Roll
+from curator.ledger.browsing import batched_names
 from curator.ledger.database import Database
 
 _COLUMNS = (
@@ -114,12 +116,65 @@ def readings(derived: Database, roll: Roll, maker: str, reasons: Mapping[str, st
     )
 
 
+def readings_of(derived: Database, digests: Sequence[str], maker: str) -> dict[str, Reading]:
+    """Digest to the maker's reading, without its thumbnail, for those that have one."""
+    known = {}
+    for some in batched_names(digests):
+        marks = ", ".join("?" * len(some))
+        for row in derived.rows(
+            f"SELECT {_COLUMNS} FROM reading WHERE maker = ? AND digest IN ({marks})", (maker, *some)
+        ):
+            known[row[0]] = _reading(row)
+    return known
+
+
+def _reading(row: tuple[Any, ...]) -> Reading:
+    frame, landmarks = row[13], row[14]
+    return Reading(
+        digest=row[0],
+        why=row[1],
+        file_bytes=row[2],
+        width=row[3],
+        height=row[4],
+        dct=int.from_bytes(row[5], "little"),
+        difference=int.from_bytes(row[6], "little"),
+        mirror=int.from_bytes(row[7], "little"),
+        sharpness=row[8],
+        brightness=row[9],
+        contrast=row[10],
+        clipped=row[11],
+        faces=row[12],
+        frame=None if frame is None else tuple(np.frombuffer(frame, dtype="<f8").tolist()),
+        landmarks=None
+        if landmarks is None
+        else tuple((float(x), float(y)) for x, y in np.frombuffer(landmarks, dtype="<f8").reshape(-1, 2)),
+        eye_distance=row[15],
+        embedding=None if row[16] is None else np.frombuffer(row[16], dtype="<f4").astype(np.float32),
+    )
+
+
 def thumbnails(derived: Database, digests: Sequence[str]) -> dict[str, bytes]:
     known: dict[str, bytes] = {}
-    for digest in digests:
-        for row in derived.rows("SELECT jpeg FROM thumbnail WHERE digest = ?", (digest,)):
-            known[digest] = row[0]
+    for some in batched_names(digests):
+        marks = ", ".join("?" * len(some))
+        known |= dict(derived.rows(f"SELECT digest, jpeg FROM thumbnail WHERE digest IN ({marks})", some))
     return known
+
+
+def array(derived: Database, kind: str, key: str) -> NDArray[Any] | None:
+    rows = derived.rows("SELECT dtype, shape, data FROM array WHERE kind = ? AND key = ?", (kind, key))
+    if not rows:
+        return None
+    dtype, shape, data = rows[0]
+    return np.frombuffer(data, dtype=dtype).reshape(json.loads(shape)).copy()
+
+
+def put_array(derived: Database, kind: str, key: str, values: NDArray[Any]) -> None:
+    with derived.transaction():
+        derived.execute(
+            "INSERT OR REPLACE INTO array VALUES (?, ?, ?, ?, ?)",
+            (kind, key, values.dtype.str, json.dumps(values.shape), np.ascontiguousarray(values).tobytes()),
+        )
 
 
 def finding(derived: Database, kind: str, key: str) -> Any | None:

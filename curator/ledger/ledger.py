@@ -12,9 +12,12 @@ from types import TracebackType
 from typing import Any, Self
 
 from filelock import FileLock, Timeout
+from numpy.typing import NDArray
 
-from curator.domain import Assignment, PhotoFile, Reading, Readings, Roll, Verdict
+from curator.domain import Act, Assignment, EchoVerdict, PhotoFile, Reading, Readings, Roll, Verdict
 from curator.errors import BadInput, EnvironmentFailed
+from curator.ledger import acts as _acts
+from curator.ledger import browsing as _browsing
 from curator.ledger import derived as _derived
 from curator.ledger import record as _record
 from curator.ledger.database import Database
@@ -180,13 +183,69 @@ class Ledger:
         """Photo name to the raw path below the photo root, for the names on the roll."""
         return _record.raw_of(self._record, names)
 
+    def put_act(
+        self,
+        name: str,
+        *,
+        annotator: str,
+        verdicts: Sequence[Verdict] = (),
+        echo_verdicts: Sequence[EchoVerdict] = (),
+    ) -> Act | None:
+        """Add what a person said in one go, all or none, under a name for it. None where nothing in it was new."""
+        return _acts.put_act(self._writable(), name, annotator, verdicts, echo_verdicts)
+
+    def take_back(self, act: int) -> None:
+        """What was said in the act no longer stands. Nothing is removed: `restore` lets it stand again."""
+        _acts.put_turn(self._writable(), act, standing=False)
+
+    def restore(self, act: int) -> None:
+        _acts.put_turn(self._writable(), act, standing=True)
+
+    def acts(self, limit: int | None = None) -> list[Act]:
+        """The latest acts, newest first."""
+        return _acts.acts(self._record, limit)
+
     def put_verdicts(self, verdicts: Sequence[Verdict]) -> int:
-        """Add verdicts, all or none; an exact repeat is harmless. Returns how many were new."""
-        return _record.put_verdicts(self._writable(), verdicts)
+        """Add verdicts of no act, all or none; an exact repeat is harmless. Returns how many were new."""
+        record = self._writable()
+        with record.transaction():
+            return _acts.put_verdicts(record, verdicts, None)
 
     def verdicts(self) -> list[Verdict]:
-        """All verdicts in the order in which they were taken in."""
-        return _record.verdicts(self._record)
+        """The verdicts that were not taken back, in the order in which they were taken in."""
+        return _acts.verdicts(self._record)
+
+    def echo_verdicts(self) -> list[EchoVerdict]:
+        """What people said of echoes and did not take back, in the order in which they said it."""
+        return _acts.echo_verdicts(self._record)
+
+    def identity_counts(self) -> list[tuple[str, int]]:
+        """Each identity with its number of photos, by name; fast however long the roll."""
+        return _browsing.identity_counts(self._record)
+
+    def photos_of(self, identity: str) -> list[tuple[str, str]]:
+        """Name and digest (empty where unread) of the photos filed under an identity, by name."""
+        return _browsing.photos_of(self._record, identity)
+
+    def attribute_values(self) -> dict[str, dict[str, int]]:
+        """Attribute to known value to number of photos."""
+        return _browsing.attribute_values(self._record)
+
+    def identities_with(self, attribute: str, value: str) -> set[str]:
+        """The identities that have a photo with this value."""
+        return _browsing.identities_with(self._record, attribute, value)
+
+    def attributes_of(self, photos: Sequence[str]) -> dict[str, dict[str, str]]:
+        """Photo name to its attributes."""
+        return _browsing.attributes_of(self._record, photos)
+
+    def digests_of(self, photos: Sequence[str]) -> Mapping[str, str]:
+        """Photo name to digest, for the photos on the roll whose bytes could be read."""
+        return _browsing.digests_of(self._record, photos)
+
+    def readings_of(self, digests: Sequence[str]) -> dict[str, Reading]:
+        """Digest to the present maker's reading, without its thumbnail, for those that have one."""
+        return _derived.readings_of(self._derived, digests, self.maker or "")
 
     def state(self) -> str:
         """A short digest of the roll, what made its readings, and the verdicts: what every finding hangs on."""
@@ -206,11 +265,21 @@ class Ledger:
         self._writable()
         _derived.put_finding(self._derived, kind, key, document)
 
+    def array(self, kind: str, key: str) -> NDArray[Any] | None:
+        """The stored array of `kind`, if it was made from `key`; else None."""
+        return _derived.array(self._derived, kind, key)
+
+    def put_array(self, kind: str, key: str, values: NDArray[Any]) -> None:
+        """Store an array made from the state `key`; it replaces the one of the same kind."""
+        self._writable()
+        _derived.put_array(self._derived, kind, key, values)
+
     def put_split(self, assignment: Assignment, recipe_text: str) -> None:
+        """Note an assignment; an act of its own, that can be taken back."""
         _record.put_split(self._writable(), assignment, recipe_text)
 
     def split(self) -> tuple[Assignment, str] | None:
-        """The latest assignment and the recipe it was made by."""
+        """The latest assignment that was not taken back, and the recipe it was made by."""
         return _record.latest_split(self._record)
 
     def put_edition(self, *, path: str, data_digest: str, seed: int, recipe_text: str) -> int:

@@ -8,7 +8,8 @@ from datetime import UTC, datetime
 
 import numpy as np
 
-from curator.domain import Assignment, PairAnswer, PhotoAnswer, PhotoFile, Roll, Verdict
+from curator.domain import Assignment, PhotoFile, Roll
+from curator.ledger.acts import STANDING, begin_act
 from curator.ledger.database import Database
 
 
@@ -99,30 +100,13 @@ def raw_of(record: Database, names: Sequence[str]) -> dict[str, bytes]:
     return known
 
 
-def put_verdicts(record: Database, verdicts: Sequence[Verdict]) -> int:
-    with record.transaction():
-        return record.execute_many(
-            """INSERT INTO verdict (photo_a, photo_b, answer, annotator, at, shown, digest_a, digest_b)
-               VALUES (?1, ?2, ?3, ?4, ?5, ?6,
-                       (SELECT digest FROM photo WHERE name = ?1), (SELECT digest FROM photo WHERE name = ?2))
-               ON CONFLICT DO NOTHING""",
-            ((v.photo_a, v.photo_b, v.answer.value, v.annotator, v.at, v.shown) for v in verdicts),
-        )
-
-
-def verdicts(record: Database) -> list[Verdict]:
-    rows = record.rows("SELECT photo_a, photo_b, answer, annotator, at, shown FROM verdict ORDER BY id")
-    return [
-        Verdict(a, b, PairAnswer(answer) if b else PhotoAnswer(answer), annotator, at, shown)
-        for a, b, answer, annotator, at, shown in rows
-    ]
-
-
 def put_split(record: Database, assignment: Assignment, recipe_text: str) -> None:
+    at = _now()
     with record.transaction():
+        act = begin_act(record, f"put {len(assignment.split_of)} identities to splits, seed {assignment.seed}", "", at)
         record.execute(
-            "INSERT INTO split (at, seed, gap_to_bound, recipe) VALUES (?, ?, ?, ?)",
-            (_now(), assignment.seed, assignment.gap_to_bound, recipe_text),
+            "INSERT INTO split (at, seed, gap_to_bound, recipe, act) VALUES (?, ?, ?, ?, ?)",
+            (at, assignment.seed, assignment.gap_to_bound, recipe_text, act),
         )
         record.execute_many(
             "INSERT INTO split_identity VALUES ((SELECT max(id) FROM split), ?, ?)",
@@ -132,7 +116,9 @@ def put_split(record: Database, assignment: Assignment, recipe_text: str) -> Non
 
 def latest_split(record: Database) -> tuple[Assignment, str] | None:
     with record.snapshot():
-        rows = record.rows("SELECT id, seed, gap_to_bound, recipe FROM split ORDER BY id DESC LIMIT 1")
+        rows = record.rows(
+            f"SELECT id, seed, gap_to_bound, recipe FROM split WHERE {STANDING} ORDER BY id DESC LIMIT 1"
+        )
         if not rows:
             return None
         number, seed, gap, recipe = rows[0]

@@ -37,6 +37,36 @@ RECORD = (
             number INTEGER PRIMARY KEY, path TEXT NOT NULL, data_digest TEXT NOT NULL, seed INTEGER NOT NULL,
             recipe TEXT NOT NULL, at TEXT NOT NULL)""",
     ),
+    (
+        # What a person did in one go, so that it can be taken back in one go. Taking back and restoring are words too:
+        # they are added as turns, and nothing said is ever changed or removed.
+        """CREATE TABLE act (
+            number INTEGER PRIMARY KEY, name TEXT NOT NULL, annotator TEXT NOT NULL, at TEXT NOT NULL)""",
+        """CREATE TABLE act_turn (
+            id INTEGER PRIMARY KEY, act INTEGER NOT NULL REFERENCES act (number),
+            standing INTEGER NOT NULL, at TEXT NOT NULL)""",
+        "CREATE INDEX act_turn_act ON act_turn (act)",
+        """CREATE VIEW fallen_act AS
+           SELECT act FROM act_turn AS turn
+           WHERE standing = 0 AND id = (SELECT max(id) FROM act_turn WHERE act = turn.act)""",
+        "ALTER TABLE verdict ADD COLUMN act INTEGER REFERENCES act (number)",
+        "CREATE INDEX verdict_act ON verdict (act)",
+        "ALTER TABLE split ADD COLUMN act INTEGER REFERENCES act (number)",
+        """CREATE TABLE echo_answer (
+            id INTEGER PRIMARY KEY,
+            photo_a TEXT NOT NULL, photo_b TEXT NOT NULL, answer TEXT NOT NULL,
+            annotator TEXT NOT NULL, at TEXT NOT NULL, act INTEGER NOT NULL REFERENCES act (number),
+            digest_a TEXT, digest_b TEXT)""",
+        "CREATE INDEX echo_answer_act ON echo_answer (act)",
+        *(
+            f"""CREATE TRIGGER {table}_is_never_{done} BEFORE {event} ON {table}
+                BEGIN SELECT RAISE(ABORT, 'what people said is only ever added to'); END"""
+            for table in ("act", "act_turn", "echo_answer")
+            for event, done in (("UPDATE", "changed"), ("DELETE", "removed"))
+        ),
+        # The window filters identities by attribute.
+        "CREATE INDEX attribute_value ON attribute (attribute, value)",
+    ),
 )
 
 DERIVED = (
@@ -53,5 +83,9 @@ DERIVED = (
         """CREATE TABLE thumbnail (
             id INTEGER PRIMARY KEY, digest TEXT NOT NULL UNIQUE, jpeg BLOB NOT NULL)""",
         "CREATE TABLE finding (kind TEXT PRIMARY KEY, key TEXT NOT NULL, document TEXT NOT NULL)",
+    ),
+    (
+        """CREATE TABLE array (
+            kind TEXT PRIMARY KEY, key TEXT NOT NULL, dtype TEXT NOT NULL, shape TEXT NOT NULL, data BLOB NOT NULL)""",
     ),
 )
