@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import json
 import tomllib
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -93,6 +94,62 @@ def parse_recipe(text: str, source: str = "the recipe") -> Recipe:
     )
     top.done()
     return recipe
+
+
+def recipe_toml(recipe: Recipe) -> str:
+    """The recipe as TOML that `parse_recipe` reads back to an equal one; whatever `recipe` holds is written unchecked.
+
+    Lists of which no rows are asked stand as comments. Raises `BadInput` for texts that UTF-8 cannot hold.
+    """
+    split, pairs, triplets = recipe.split, recipe.pairs, recipe.triplets
+    lines = [
+        ("[split]", ""),
+        (f"shares = {_inline(split.shares, SPLITS)}", ""),
+        (f"seed = {split.seed}", ""),
+        (f"balance = {_listed(split.balance)}", "attributes kept in proportion"),
+        (f"keep_together = {_listed(split.keep_together)}", "photos with the same value never straddle splits"),
+        (f"keep_from = {_quoted(split.keep_from)}", "an earlier edition whose identities keep their split"),
+        ("[pairs]", "rows of each list: half mated, half non-mated"),
+        *_counted(pairs.counts),
+        (f"bands = {_inline(pairs.bands, BANDS)}", ""),
+        (f"match_on = {_listed(pairs.match_on)}", "attributes that both photos of a non-mated pair share"),
+        (f"match_share = {float(pairs.match_share)!r}", "of the non-mated pairs, so many are matched on these"),
+        (f"per_identity = {pairs.per_identity}", "an identity appears in at most so many pairs"),
+        (f"trust_floor = {float(pairs.trust_floor)!r}", "pairs below it need a review, else they are left out"),
+        ("[triplets]", "rows of each list"),
+        *_counted(triplets.counts),
+        (f"rule = {_quoted(triplets.rule)}", "of " + ", ".join(_RULES)),
+        (f"margin = {float(triplets.margin)!r}", "semi-hard negatives lie within it, in squared distance"),
+        ("[folds]", ""),
+        (f"count = {recipe.folds}", "identity-disjoint folds of the test part; 0: none"),
+        ("[write]", ""),
+        (f"formats = {_listed(recipe.formats)}", "of " + ", ".join(_FORMATS)),
+    ]
+    return "".join(f"{words:<29} # {why}\n" if why else f"{words}\n" for words, why in lines)
+
+
+def _counted(counts: Mapping[str, int]) -> list[tuple[str, str]]:
+    return [(f"{name} = {counts[name]}" if name in counts else f"# {name} = 0", "") for name in SPLITS]
+
+
+def _inline(shares: Mapping[str, float], names: Sequence[str]) -> str:
+    """An inline table; names that are not known come last, for the reader to complain of."""
+    ordered = [*(name for name in names if name in shares), *(name for name in shares if name not in names)]
+    inside = ", ".join(f"{name if name in names else _quoted(name)} = {float(shares[name])!r}" for name in ordered)
+    return f"{{ {inside} }}" if inside else "{}"
+
+
+def _listed(texts: Sequence[str]) -> str:
+    return f"[{', '.join(map(_quoted, texts))}]"
+
+
+def _quoted(text: str) -> str:
+    """A basic string of TOML: escaped as in JSON, and the delete character too, which JSON lets stand."""
+    try:
+        text.encode()
+    except UnicodeEncodeError as error:
+        raise BadInput(f"{text!a} holds characters that cannot be written as UTF-8.") from error
+    return json.dumps(text, ensure_ascii=False).replace("\x7f", "\\u007f")
 
 
 class _Table:

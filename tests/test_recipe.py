@@ -1,9 +1,25 @@
 """Recipes are checked key by key."""
 
-import pytest
+import re
+from collections.abc import Sequence
+from dataclasses import replace
 
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from curator.domain import SPLITS
 from curator.errors import BadInput
-from curator.recipe import DEFAULT_RECIPE_TEXT, parse_recipe
+from curator.recipe import (
+    BANDS,
+    DEFAULT_RECIPE_TEXT,
+    PairsRecipe,
+    Recipe,
+    SplitRecipe,
+    TripletsRecipe,
+    parse_recipe,
+    recipe_toml,
+)
 
 
 def test_the_default_recipe() -> None:
@@ -48,3 +64,61 @@ def test_what_is_left_out_takes_its_default() -> None:
 def test_complaints(text: str, words: str) -> None:
     with pytest.raises(BadInput, match=words):
         parse_recipe(text)
+
+
+_texts = st.lists(st.text(), max_size=3, unique=True).map(tuple)
+
+
+def _shares(names: Sequence[str]) -> st.SearchStrategy[dict[str, float]]:
+    """Shares of some of `names` that add up to 1 as closely as floats do."""
+    weights = st.dictionaries(st.sampled_from(names), st.floats(0.001, 1), min_size=1)
+    return weights.map(lambda told: {name: weight / sum(told.values()) for name, weight in told.items()})
+
+
+def _counts(step: int) -> st.SearchStrategy[dict[str, int]]:
+    return st.dictionaries(st.sampled_from(SPLITS), st.integers(0, 10**6).map(lambda count: count * step))
+
+
+_recipes = st.builds(
+    Recipe,
+    st.builds(SplitRecipe, _shares(SPLITS), st.integers(0, 2**62), _texts, _texts, st.text()),
+    st.builds(
+        PairsRecipe,
+        _counts(2),
+        _shares(BANDS),
+        _texts,
+        st.floats(0, 1),
+        st.integers(1, 10**6),
+        st.floats(0, 1),
+    ),
+    st.builds(TripletsRecipe, _counts(1), st.sampled_from(["semi-hard", "hard", "random"]), st.floats(0, 4)),
+    st.integers(0, 99).filter(lambda count: count != 1),
+    st.lists(st.sampled_from(["parquet", "csv", "lfw-text"]), min_size=1, unique=True).map(tuple),
+)
+
+
+@given(_recipes)
+def test_a_written_recipe_reads_back_equal(recipe: Recipe) -> None:
+    assert parse_recipe(recipe_toml(recipe)) == recipe
+
+
+def test_every_key_is_written_in_the_order_of_the_default() -> None:
+    recipe = parse_recipe(DEFAULT_RECIPE_TEXT)
+    keys = [
+        [found[1] for line in text.splitlines() if (found := re.match(r"(\[?\w+)", line))]
+        for text in (DEFAULT_RECIPE_TEXT, recipe_toml(recipe))
+    ]
+    assert keys[0] == keys[1]
+
+
+def test_lists_not_asked_for_stand_as_comments() -> None:
+    assert "\n# val = 0\n" in recipe_toml(parse_recipe(""))
+
+
+def test_what_a_form_may_hold_wrongly_is_complained_of_when_read() -> None:
+    recipe = parse_recipe("")
+    wrong = replace(recipe, split=replace(recipe.split, shares={"train": 0.5, "ex am": 0.5}))
+    with pytest.raises(BadInput, match=r"'split\.shares\.ex am' .* is not known"):
+        parse_recipe(recipe_toml(wrong))
+    with pytest.raises(BadInput, match="UTF-8"):
+        recipe_toml(replace(recipe, split=replace(recipe.split, keep_from="a\udcff")))
