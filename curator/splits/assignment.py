@@ -29,8 +29,13 @@ class Sizes:
 
 
 def objective(sizes: Sizes, split_of: Ints, shares: _Reals) -> float:
-    """Weighted sum over quantities and splits of the squared gap between attained and asked share."""
-    return _gap(_attained(sizes, split_of, len(shares)), sizes, shares)
+    """Weighted sum over quantities and splits of the squared gap between attained and asked share.
+
+    A quantity of which there is nothing has no shares, and counts for nothing.
+    """
+    there = sizes.weights.sum(axis=0) > 0
+    missed = (_attained(sizes, split_of, len(shares)) - shares[:, None]) ** 2
+    return float((missed * sizes.importance)[:, there].sum())
 
 
 def assign(sizes: Sizes, shares: _Reals, *, fixed: Ints, rng: np.random.Generator) -> tuple[NDArray[np.int64], float]:
@@ -142,7 +147,3 @@ def _attained(sizes: Sizes, split_of: Ints, n_splits: int) -> _Reals:
     np.add.at(attained, split_of, sizes.weights)
     shares: _Reals = attained / np.maximum(sizes.weights.sum(axis=0), 1e-12)
     return shares
-
-
-def _gap(attained: _Reals, sizes: Sizes, shares: _Reals) -> float:
-    return float((((attained - shares[:, None]) ** 2) * sizes.importance).sum())

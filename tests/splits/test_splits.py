@@ -127,6 +127,14 @@ def test_a_split_of_no_share_gets_nothing() -> None:
     assert set(split_of.tolist()) == {0}
 
 
+def test_what_there_is_nothing_of_has_no_share_to_miss() -> None:
+    """One identity with one photo forms no pair: the split that is asked for everything has reached it."""
+    sizes = Sizes(np.array([[1.0, 1.0, 0.0]]), np.array([1.0, 1.0, 0.5]))
+    whole, free = np.array([1.0]), np.array([-1])
+    split_of, gap = assign(sizes, whole, fixed=free, rng=np.random.default_rng(0))
+    assert (objective(sizes, split_of, whole), bound(sizes, whole, free), gap) == (0.0, 0.0, 0.0)
+
+
 def test_annotators_who_disagree_tie_what_they_disagree_on() -> None:
     settled = Settled({}, {}, contested_pairs=(("i00/0", "i01/0"),))
     (tie,) = ties(_roll([1, 1], []), [], [], settled, [])
