@@ -46,9 +46,13 @@ class Ledger:
     def create(cls, path: Path, photo_root: Path) -> Self:
         """Make a ledger for `photo_root` at `path`, or open the one that is there.
 
-        Raises `BadInput` where it belongs to another photo root, lies inside the photo root, or `path` is taken.
+        One that knows of no photo and no verdict yet, as a mistyped root leaves it, passes to another photo root.
+        Raises `BadInput` where `photo_root` is no folder, the ledger belongs to another photo root or lies inside the
+        photo root, or `path` is taken.
         """
         path, photo_root = Path(path).absolute(), Path(photo_root).resolve()
+        if not photo_root.is_dir():
+            raise BadInput(f"{photo_root} is no folder of photos.")
         if path.resolve().is_relative_to(photo_root):
             raise BadInput(
                 f"The ledger {path} would lie inside the photo root {photo_root}, which is never written to."
@@ -60,14 +64,22 @@ class Ledger:
         except OSError as error:
             raise EnvironmentFailed(f"The ledger {path} could not be made: {error.strerror}.") from error
         ledger = cls._opened(path)
-        known = _record.setting(ledger._record, "photo_root")
-        if known is None:
-            with ledger.writing():
-                _record.put_settings(ledger._record, {"photo_root": _text(photo_root)})
-        elif _path(known) != photo_root:
+        try:
+            ledger._belong_to(photo_root)
+        except BaseException:
             ledger.close()
-            raise BadInput(f"The ledger {path} belongs to the photo root {_path(known)}, not to {photo_root}.")
+            raise
         return ledger
+
+    def _belong_to(self, photo_root: Path) -> None:
+        known = _record.setting(self._record, "photo_root")
+        if known is not None and _path(known) == photo_root:
+            return
+        with self.writing():
+            if known is not None and not _record.is_blank(self._record):
+                raise BadInput(f"The ledger {self.path} belongs to the photo root {_path(known)}, not to {photo_root}.")
+            _record.put_attributes(self._record, {})
+            _record.put_settings(self._record, {"photo_root": _text(photo_root)})
 
     @classmethod
     def open(cls, path: Path) -> Self:

@@ -38,6 +38,12 @@ def put_settings(record: Database, values: Mapping[str, str]) -> None:
         )
 
 
+def is_blank(record: Database) -> bool:
+    """Whether there is no photo, and nobody ever said a thing, taken back or not."""
+    tables = ("photo", "verdict", "echo_answer")
+    return not any(record.rows(f"SELECT 1 FROM {table} LIMIT 1") for table in tables)
+
+
 def files(record: Database) -> dict[bytes, PhotoFile]:
     rows = record.rows("SELECT raw, name, identity, size, mtime_ns, digest, why FROM photo")
     return {row[0]: PhotoFile(*row) for row in rows}

@@ -130,6 +130,20 @@ def test_bad_input_is_one_sentence(work: Path, capsys: pytest.CaptureFixture[str
     assert stopped.value.code == 2
 
 
+def test_a_mistyped_root_does_not_stand_in_the_way_of_the_right_one(
+    work: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (tmp_path / "empty").mkdir()
+    ledger = ("--ledger", str(tmp_path / "ledger"), "--framing", "whole", "--workers", "1")
+    assert main(["intake", str(tmp_path / "nowhere"), *ledger]) == 2
+    assert "nowhere is no folder of photos." in capsys.readouterr().err
+    assert not (tmp_path / "ledger").exists()
+    assert main(["intake", str(tmp_path / "empty"), *ledger]) == 2
+    assert main(["intake", str(work / "photos"), *ledger]) == 0
+    assert main(["intake", str(tmp_path / "empty"), *ledger]) == 2
+    assert "belongs to the photo root" in capsys.readouterr().err
+
+
 def test_a_damaged_ledger_is_an_environment_failure(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     (tmp_path / "record.sqlite").write_bytes(b"damaged" * 1000)
     assert main(["roll", "--ledger", str(tmp_path)]) == 3

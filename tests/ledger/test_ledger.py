@@ -183,9 +183,34 @@ def test_wrong_places_are_refused_in_words(tmp_path: Path, root: Path) -> None:
     (tmp_path / "full" / "letter.txt").write_text("mine")
     with pytest.raises(BadInput, match="is no ledger"):
         Ledger.create(tmp_path / "full", root)
-    Ledger.create(tmp_path / "ledger", root).close()
-    with pytest.raises(BadInput, match="belongs to the photo root"):
-        Ledger.create(tmp_path / "ledger", tmp_path / "full")
+
+
+def test_a_photo_root_that_is_no_folder_leaves_nothing(tmp_path: Path) -> None:
+    (tmp_path / "letter.txt").write_text("mine")
+    for wrong in ("nowhere", "letter.txt"):
+        with pytest.raises(BadInput, match=rf"{wrong} is no folder"):
+            Ledger.create(tmp_path / "ledger", tmp_path / wrong)
+    assert not (tmp_path / "ledger").exists()
+
+
+def test_a_ledger_passes_to_another_root_until_it_knows_of_a_photo_or_a_verdict(
+    tmp_path: Path, root: Path, photo_file: Callable[..., PhotoFile]
+) -> None:
+    path, other = tmp_path / "ledger", tmp_path / "other"
+    other.mkdir()
+    with Ledger.create(path, other) as ledger, ledger.writing():
+        ledger.put_attributes({"a/1.jpg": {"club": "heron"}})
+    with Ledger.create(path, root) as ledger, ledger.writing():
+        assert ledger.photo_root == root
+        ledger.put_chunk([photo_file("a/1.jpg")], [], maker="m")
+        assert ledger.roll().attributes == {}
+    for _ in range(2):  # with a photo; then with what was said about it alone
+        with pytest.raises(BadInput, match=rf"belongs to the photo root {root}, not to {other}"):
+            Ledger.create(path, other)
+        with Ledger.create(path, root) as ledger, ledger.writing():
+            ledger.put_act("said", annotator="ada", verdicts=[_SAME])
+            ledger.take_back(1)
+            ledger.remove_files([b"a/1.jpg"])
 
 
 def test_damage_and_newer_schemas_are_told_in_words(tmp_path: Path, root: Path) -> None:
@@ -215,6 +240,7 @@ def test_any_name_and_any_vector_comes_back(
 ) -> None:
     base = tmp_path_factory.mktemp("round")
     vector = np.array(floats, dtype=np.float32)
+    (base / "p").mkdir()
     ordered = sorted(names)
     files = [PhotoFile(f"i/{n}".encode(), f"i/{n}", "i", 1, 1, f"{k:064x}") for k, n in enumerate(ordered)]
     with Ledger.create(base / "l", base / "p") as ledger:
