@@ -24,6 +24,7 @@ from curator.echoes.people import SamePerson, same_people
 from curator.echoes.settlement import Facts, settled_change
 from curator.errors import BadInput
 from curator.intake.step import run as run_intake
+from curator.intake.walking import walk
 from curator.ledger import Ledger
 from curator.progress import Progress, stop_if_wanted
 
@@ -154,6 +155,9 @@ def compare(
             raise BadInput(f"{root} is no folder of photos.")
     if root_a.resolve() == root_b.resolve():
         raise BadInput(f"{root_a} and {root_b} are the same folder.")
+    for inner, outer in ((root_a, root_b), (root_b, root_a)):
+        if inner.resolve().is_relative_to(outer.resolve()):
+            raise BadInput(f"{inner} lies inside {outer}: all that it holds would be in both.")
     with (
         _both(root_a, root_b) as joined,
         tempfile.TemporaryDirectory(prefix="pairwright-") as folder,
@@ -185,11 +189,16 @@ def compare(
 
 @contextmanager
 def _both(root_a: Path, root_b: Path) -> Iterator[Path]:
-    """One root that links to both, so that one intake reads both."""
+    """One root that links to both, so that one intake reads both. Raises `BadInput` where one holds no photos."""
     with tempfile.TemporaryDirectory(prefix="pairwright-") as folder:
         joined = Path(folder)
         (joined / "a").symlink_to(root_a.resolve(), target_is_directory=True)
         (joined / "b").symlink_to(root_b.resolve(), target_is_directory=True)
+        # Looked for before anything is read: a root without photos shares nothing, which would pass for good news.
+        sides = {file.name[0] for file in walk(joined).files}
+        for root, side in ((root_a, "a"), (root_b, "b")):
+            if side not in sides:
+                raise BadInput(f"{root} holds no photos; there is nothing to compare.")
         yield joined
 
 

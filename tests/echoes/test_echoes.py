@@ -180,6 +180,20 @@ def test_two_roots_compared(roots: tuple[Path, Path]) -> None:
 def test_a_root_is_not_compared_with_itself(roots: tuple[Path, Path]) -> None:
     with pytest.raises(BadInput, match="same folder"):
         compare(roots[0], roots[0], progress=Silent())
+    with pytest.raises(BadInput, match=r"one/p lies inside \S*one:"):
+        compare(roots[0], roots[0] / "p", progress=Silent())
+
+
+@pytest.mark.parametrize("empty_first", [True, False])
+def test_a_root_without_photos_shares_nothing_that_could_be_told(
+    roots: tuple[Path, Path], tmp_path: Path, *, empty_first: bool
+) -> None:
+    empty = tmp_path / "empty"
+    (empty / "p").mkdir(parents=True)
+    (empty / "p" / "letter.txt").write_text("mine")
+    pair = (empty, roots[1]) if empty_first else (roots[0], empty)
+    with pytest.raises(BadInput, match=r"empty holds no photos"):
+        compare(*pair, progress=Silent())
 
 
 def test_echoes_of_a_ledger_are_found_once_and_kept(roots: tuple[Path, Path], tmp_path: Path) -> None:
