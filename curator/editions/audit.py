@@ -45,6 +45,9 @@ def audit_path(
     report.checked |= {"lists": len(collected.lists), "rows": len(collected.rows)}
     if collected.triplets:
         report.checked["triplets"] = len(collected.triplets)
+    if not _everything(collected):
+        # Otherwise whatever lost the rows on the way would pass for sound.
+        report.faults.append(Fault("nothing-to-check", "no list holds a row"))
     _pairs(collected.rows, report)
     _triplets(collected, report)
     _labels(collected, report)

@@ -46,6 +46,31 @@ def test_planted_rows_are_found(tmp_path: Path, row: str, kind: str) -> None:
     assert kind in _kinds(_csv(tmp_path / "pairs.csv", [*_GOOD, row]))
 
 
+@pytest.mark.parametrize(
+    ("name", "text"),
+    [
+        ("pairs.csv", "photo_a,photo_b,label\n"),
+        ("triplets.csv", "anchor,positive,negative\n"),
+        ("pairs.txt", "10\t0\n"),
+    ],
+)
+def test_lists_without_a_row_are_not_sound(tmp_path: Path, name: str, text: str) -> None:
+    (tmp_path / name).write_text(text)
+    assert _kinds(tmp_path / name) == _kinds(tmp_path) == {"nothing-to-check"}
+    _csv(tmp_path / "val.csv", _GOOD)
+    assert _kinds(tmp_path) == set()
+
+
+def test_an_edition_without_a_row_says_so_when_it_is_written(
+    made_ledger: Callable[..., Ledger], recipe_text: str, tmp_path: Path
+) -> None:
+    with made_ledger(people=1) as ledger:
+        report = write_edition(ledger, parse_recipe(recipe_text), recipe_text, tmp_path / "e", progress=Silent())
+    assert {row["rows"] for row in report.lists.values()} == {0}
+    assert "audit: nothing-to-check: no list holds a row" in report.shortfalls
+    assert _kinds(tmp_path / "e") == {"nothing-to-check"}
+
+
 def test_imbalance(tmp_path: Path) -> None:
     assert "imbalance" in _kinds(_csv(tmp_path / "pairs.csv", _GOOD[:2]))
 
