@@ -17,10 +17,8 @@ from curator.errors import BadInput
 class Kept:
     fixed: NDArray[np.int64]
     """The split of each tied group that the earlier edition decides, -1 elsewhere."""
-    left_out: frozenset[str]
-    """Identities that can neither keep their split nor leave it: they are in none."""
-    conflicts: tuple[str, ...]
-    """Why, in words."""
+    left_out: Mapping[str, str]
+    """Identities that can neither keep their split nor leave it, so that they are in none: and why, in words."""
 
 
 def decide(
@@ -40,7 +38,7 @@ def decide(
                     f"The earlier edition has {identity} in '{earlier[identity]}', to which the recipe gives no share."
                 )
             members[int(group_of[i])].append(i)
-    left_out, conflicts = set(), []
+    left_out: dict[str, str] = {}
     for group, places in sorted(members.items()):
         weight: Counter[str] = Counter()
         for i in places:
@@ -51,6 +49,6 @@ def decide(
         for i in places:
             was = earlier[identities[i]]
             if was != kept:
-                left_out.add(identities[i])
-                conflicts.append(f"{identities[i]} was in {was} and is now tied to {stays} of {kept}: it is left out")
-    return Kept(fixed, frozenset(left_out), tuple(conflicts))
+                why = f"{identities[i]} was in {was} and is now tied to {stays} of {kept}: it is left out"
+                left_out[identities[i]] = why
+    return Kept(fixed, left_out)
