@@ -87,16 +87,18 @@ def line(text: str) -> None:
 
 
 def table(title: str, header: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:
-    """A table for people on stdout; numbers to the right."""
-    drawn = Table(title=title, title_justify="left", box=None, pad_edge=False)
+    """A table for people on stdout, under its title; numbers to the right."""
+    drawn = Table(box=None, pad_edge=False)
     listed = [[_cell(value) for value in row] for row in rows]
-    original = list(listed)
     for place, name in enumerate(header):
-        numeric = all(_is_number(row[place]) for row in original) and bool(original)
+        numeric = all(_is_number(row[place]) for row in listed)
         drawn.add_column(name, justify="right" if numeric else "left", overflow="fold")
     for row in listed:
         drawn.add_row(*(Text(cell) for cell in row))
-    Console().print(drawn)
+    # Not the table's own title, which is folded to the width of the table: a path may be far longer.
+    Console(soft_wrap=True).print(Text(title, style="bold"))
+    if listed:
+        Console().print(drawn)
 
 
 def _cell(value: Any) -> str:
