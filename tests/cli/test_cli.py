@@ -1,6 +1,7 @@
 """The commands as a script would use them: JSON shapes, exit codes, one sentence for every error."""
 
 import json
+import shutil
 import subprocess
 import sys
 from pathlib import Path
@@ -41,6 +42,16 @@ def work(tmp_path_factory: pytest.TempPathFactory) -> Path:
     )
     assert code == 0
     return base
+
+
+@pytest.fixture
+def portraits(tmp_path: Path) -> Path:
+    """A ledger over some of the drawn portraits: photos that an edition may be made of."""
+    for folder in sorted((Path(__file__).parents[2] / "demo_faces" / "photos").glob("r-*"))[:6]:
+        shutil.copytree(folder, tmp_path / "photos" / folder.name)
+    (tmp_path / "recipe.toml").write_text(_RECIPE)
+    assert main(["intake", str(tmp_path / "photos"), "--ledger", str(tmp_path / "ledger")]) == 0
+    return tmp_path
 
 
 def _json(capsys: pytest.CaptureFixture[str], *arguments: object) -> Any:
@@ -90,18 +101,23 @@ def test_verdicts(work: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert "line 2: the photo p9/9.png is not on the roll" in capsys.readouterr().err
 
 
-def test_split_edition_audit(work: Path, capsys: pytest.CaptureFixture[str]) -> None:
-    recipe = work / "recipe.toml"
-    split = _json(capsys, "split", "--ledger", work / "ledger", "--recipe", recipe)
+def test_split_edition_audit(portraits: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    recipe = portraits / "recipe.toml"
+    split = _json(capsys, "split", "--ledger", portraits / "ledger", "--recipe", recipe)
     assert set(split) >= {"shares", "balance", "gap_to_bound", "leaks"}
     assert set(split["shares"]["train"]) == {"asked", "identities", "photos", "pairs"}
-    edition = _json(capsys, "edition", "--ledger", work / "ledger", "--recipe", recipe, "--out", work / "edition")
+    edition = _json(
+        capsys, "edition", "--ledger", portraits / "ledger", "--recipe", recipe, "--out", portraits / "edition"
+    )
     assert set(edition) >= {"edition", "lists", "expected_wrong_labels", "leaks", "shortfalls"}
     assert edition["leaks"] == 0
-    audit = _json(capsys, "audit", work / "edition", "--photos", work / "photos", "--ledger", work / "ledger")
+    assert edition["lists"] == {f"pairs/{name}": {"rows": 4, "mated": 2, "non_mated": 2} for name in ("train", "test")}
+    audit = _json(
+        capsys, "audit", portraits / "edition", "--photos", portraits / "photos", "--ledger", portraits / "ledger"
+    )
     assert (audit["sound"], audit["faults"]) == (True, [])
-    (work / "edition" / "data" / "recipe.toml").write_text("touched")
-    assert main(["audit", str(work / "edition")]) == 1
+    (portraits / "edition" / "data" / "recipe.toml").write_text("touched")
+    assert main(["audit", str(portraits / "edition")]) == 1
     assert "digest-mismatch" in capsys.readouterr().out
 
 
