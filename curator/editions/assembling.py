@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-from collections import Counter
-from collections.abc import Callable, Iterable, Mapping
-from typing import Any
+from collections.abc import Callable
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,27 +15,45 @@ from curator.editions.permitting import permit
 from curator.editions.triplet_lists import sample_triplets
 from curator.recipe import Recipe
 
-StopIfWanted = Callable[[], None]
 
+def assemble(material: Material, recipe: Recipe, went: Callable[[int], None]) -> Lists:
+    """Sample all lists of the recipe; the same material and recipe give the same lists.
 
-def assemble(material: Material, recipe: Recipe, stop: StopIfWanted) -> Lists:
-    """Sample all lists of the recipe; the same material and recipe give the same lists."""
+    `went` hears how many of the `asked_rows` were dealt with since, 0 in between; it may raise to stop.
+    """
     lists = Lists()
     allowed = permit(material.roll, material.settled, material.echoes)
-    splits = [*recipe.pairs.counts, *(name for name in recipe.triplets.counts if name not in recipe.pairs.counts)]
-    for split in splits:
-        stop()
+
+    def heed() -> None:
+        went(0)
+
+    for split in _splits(recipe):
+        heed()
         rng = np.random.default_rng([recipe.split.seed, *split.encode()])
         photos = _photos_of(material, split)
         fold_of = np.full(len(material.roll.identities), -1, dtype=np.int64)
         if split == "test" and recipe.folds:
             fold_of = _folds(material, photos, recipe.folds, lists)
         if recipe.pairs.counts.get(split):
-            sample_pairs(material, recipe, split, photos, allowed, fold_of, rng, lists)
+            sample_pairs(material, recipe, split, photos, allowed, fold_of, rng, lists, heed)
+            went(recipe.pairs.counts[split])
         if recipe.triplets.counts.get(split):
-            stop()
-            sample_triplets(material, recipe, split, photos, allowed, rng, lists)
+            sample_triplets(material, recipe, split, photos, allowed, rng, lists, heed)
+            went(recipe.triplets.counts[split])
     return lists
+
+
+def asked_rows(recipe: Recipe) -> dict[str, int]:
+    """List name to the rows asked for, in the order of sampling; lists of no rows are none."""
+    told = {}
+    for split in _splits(recipe):
+        told[f"pairs/{split}"] = recipe.pairs.counts.get(split, 0)
+        told[f"triplets/{split}"] = recipe.triplets.counts.get(split, 0)
+    return {name: rows for name, rows in told.items() if rows}
+
+
+def _splits(recipe: Recipe) -> list[str]:
+    return [*recipe.pairs.counts, *(name for name in recipe.triplets.counts if name not in recipe.pairs.counts)]
 
 
 def _photos_of(material: Material, split: str) -> NDArray[np.int64]:
@@ -56,11 +72,3 @@ def _folds(material: Material, photos: Ints, count: int, lists: Lists) -> NDArra
     if possible >= 2:
         fold_of[present] = deal(material.group_of[present], number[present], min(count, possible))
     return fold_of
-
-
-def use_of_identities(rows: Iterable[Mapping[str, Any]]) -> tuple[int, float]:
-    """The largest and the median number of pairs that an identity is in."""
-    counts: Counter[str] = Counter()
-    for row in rows:
-        counts.update({row["identity_a"], row["identity_b"]})
-    return (max(counts.values()), float(np.median(list(counts.values())))) if counts else (0, 0.0)

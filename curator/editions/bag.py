@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 import os
 import shutil
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from pathlib import Path
 
 from curator.errors import BadInput, EnvironmentFailed
@@ -17,10 +17,11 @@ def check_target(out: Path) -> None:
         raise BadInput(f"{out} is there already; name a new folder for the edition.")
 
 
-def write_bag(out: Path, payload: Mapping[str, bytes], info: Mapping[str, str]) -> str:
+def write_bag(out: Path, payload: Mapping[str, bytes], info: Mapping[str, str], *, went: Callable[[int], None]) -> str:
     """Write `payload` (path below data/ to bytes) as a bag at `out`. Returns the digest of its payload manifest.
 
-    Nothing is seen at `out` before everything is on disk. Raises `BadInput`, `EnvironmentFailed`.
+    Nothing is seen at `out` before everything is on disk. `went` hears of each file of the payload that is; it may
+    raise to stop, and then nothing is left. Raises `BadInput`, `EnvironmentFailed`.
     """
     check_target(out)
     beside = out.with_name(f".{out.name}.{os.getpid()}.partial")
@@ -33,13 +34,16 @@ def write_bag(out: Path, payload: Mapping[str, bytes], info: Mapping[str, str]) 
         "bag-info.txt": "".join(f"{key}: {value}\n" for key, value in sorted(told.items())).encode(),
         "manifest-sha256.txt": manifest,
     }
-    files |= tags | {"tagmanifest-sha256.txt": _manifest(tags)}
+    tags["tagmanifest-sha256.txt"] = _manifest(tags)
     try:
         out.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
         beside.mkdir(mode=0o700)
         for name, data in files.items():
             _write(beside / name, data)
-        for folder in {(beside / name).parent for name in files}:
+            went(1)
+        for name, data in tags.items():
+            _write(beside / name, data)
+        for folder in {(beside / name).parent for name in (*files, *tags)}:
             _sync_folder(folder)
         if out.exists():
             out.rmdir()

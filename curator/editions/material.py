@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from curator.domain import Bools, EchoGroup, Ints, Readings, Roll
+from curator.editions.sampling import Pool
 from curator.pairs.trust import TrustModel
 from curator.verdicts import Settled
 
@@ -25,6 +26,18 @@ class Material:
     """Along the roll: whether the photo may be used."""
     echoes: Iterable[EchoGroup]
     settled: Settled
+    left_out: Mapping[int, str] = field(default_factory=dict)
+    """Place along the roll to the reason, for the photos that may not be used."""
+
+
+@dataclass(frozen=True)
+class Owed:
+    """Candidates of one kind left out because their trust is under the floor, or unclear, and nobody settled them."""
+
+    pairs: Pool
+    mated: bool
+    unclear: Bools
+    """Along the pairs: whether people could not tell, or what they said raises the question."""
 
 
 @dataclass
@@ -33,6 +46,6 @@ class Lists:
 
     pairs: dict[str, list[dict[str, Any]]] = field(default_factory=dict)
     triplets: dict[str, list[dict[str, Any]]] = field(default_factory=dict)
-    owed: dict[str, int] = field(default_factory=dict)
-    """Split to candidate pairs left out because their trust is under the floor and nobody settled them."""
+    owed: dict[str, list[Owed]] = field(default_factory=dict)
+    """Split to the candidate pairs that it owes a review."""
     shortfalls: list[str] = field(default_factory=list)

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections import Counter
+from collections.abc import Callable
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from curator.domain import Bools, Ints, Roll
-from curator.editions.material import Lists, Material
+from curator.editions.material import Lists, Material, Owed
 from curator.editions.permitting import Permit
 from curator.editions.sampling import Pool, Sample, choose, mated_candidates, non_mated_candidates, pooled
 from curator.recipe import BANDS, Recipe
@@ -24,8 +25,12 @@ def sample_pairs(
     fold_of: NDArray[np.int64],
     rng: np.random.Generator,
     lists: Lists,
+    heed: Callable[[], None],
 ) -> None:
-    """The pair list of a split. Each fold stands alone: it has its own rows, and no pair reaches across two."""
+    """The pair list of a split. Each fold stands alone: it has its own rows, and no pair reaches across two.
+
+    `heed` is called now and then, and may raise to stop.
+    """
     identity_of = material.roll.identity_of
     fold_of_photo = fold_of[identity_of[photos]]
     parts = [photos[fold_of_photo == fold] for fold in sorted(set(fold_of_photo.tolist()))]
@@ -38,11 +43,13 @@ def sample_pairs(
         told.say(f"{2 * sum(fitting)} of {2 * sum(rows_of)} rows fit under the cap of an identity")
     used = np.zeros(len(material.roll.identities), dtype=np.int64)
     by_part: list[list[list[dict[str, Any]]]] = [[] for _ in parts]
-    owed = 0
+    lists.owed[split] = []
     for mated in (True, False):
-        pool, kind_owed = _pool(material, recipe, parts, fitting, allowed, rng, mated=mated)
-        owed += kind_owed
+        heed()
+        pool, owed = _pool(material, recipe, parts, fitting, allowed, rng, mated=mated)
+        lists.owed[split].append(owed)
         for k, part in enumerate(parts):
+            heed()
             here = pool.take(np.isin(pool.a, part))
             matched = None if mated or not recipe.pairs.match_on else _matched(material.roll, here, recipe)
             sample = choose(here, fitting[k], recipe.pairs, identity_of, used, rng, matched=matched)
@@ -50,7 +57,6 @@ def sample_pairs(
             by_part[k].append(_rows(material, sample, allowed, fold_of, label=int(mated)))
     rows = [row for kinds in by_part for row in _balanced(kinds, told)]
     lists.shortfalls += told.sentences()
-    lists.owed[split] = owed
     lists.pairs[split] = sorted(rows, key=lambda row: (row["photo_a"], row["photo_b"]))
 
 
@@ -63,8 +69,8 @@ def _pool(
     rng: np.random.Generator,
     *,
     mated: bool,
-) -> tuple[Pool, int]:
-    """The candidates of all parts, in the bands of the whole, and how many more are owed a review."""
+) -> tuple[Pool, Owed]:
+    """The candidates of all parts, in the bands of the whole, and those that are owed a review first."""
     identity_of, embeddings = material.roll.identity_of, material.readings.embeddings
     drawn = [
         mated_candidates(part, identity_of, rows, recipe.pairs.per_identity, rng)
@@ -78,7 +84,8 @@ def _pool(
     trust_of = material.trust.mated if mated else material.trust.non_mated
     pool = pooled(a[apart], b[apart], embeddings, trust_of, mated=mated)
     usable, owed = allowed.judged(pool.a, pool.b, pool.trust, recipe.pairs.trust_floor, mated=mated)
-    return pool.take(usable), int(owed.sum())
+    lacking = pool.take(owed)
+    return pool.take(usable), Owed(lacking, mated, allowed.raises_doubt(lacking.a, lacking.b, mated=mated))
 
 
 def _evenly(rows: int, parts: int) -> list[int]:

@@ -49,12 +49,15 @@ class Permit:
         number = _numbers(a, b, self.n)
         same, different = np.isin(number, self.same), np.isin(number, self.different)
         confirmed, refuted = (same, different) if mated else (different, same)
-        unclear = np.isin(number, self.unclear)
-        if not mated:
-            identities = _numbers(self.identity_of[a], self.identity_of[b], self.n)
-            unclear |= np.isin(identities, self.one_person) & ~confirmed
-        sure = (trust >= floor) & ~unclear & ~refuted
+        sure = (trust >= floor) & ~self.raises_doubt(a, b, mated=mated) & ~refuted
         return confirmed | sure, ~(confirmed | refuted | sure)
+
+    def raises_doubt(self, a: Ints, b: Ints, *, mated: bool) -> Bools:
+        """Whether what people said of the pairs, or of others of these identities, leaves them open."""
+        unclear = np.isin(_numbers(a, b, self.n), self.unclear)
+        if not mated:
+            unclear |= np.isin(_numbers(self.identity_of[a], self.identity_of[b], self.n), self.one_person)
+        return np.asarray(unclear)
 
 
 def permit(roll: Roll, settled: Settled, echoes: Iterable[EchoGroup]) -> Permit:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import Any
 
 import numpy as np
@@ -18,7 +19,7 @@ from curator.recipe import Recipe
 _ROUNDS = 12
 """How often anchors are gone through again for triplets that are still wanted."""
 _AHEAD = 2000
-"""Anchors gone through at least in such a later round."""
+"""Anchors gone through at least in such a later round, and at most between two looks for a stop."""
 _IN_VAIN = 2
 """A round that brings nothing ends the search, but not so early."""
 
@@ -31,8 +32,12 @@ def sample_triplets(
     allowed: Permit,
     rng: np.random.Generator,
     lists: Lists,
+    heed: Callable[[], None],
 ) -> None:
-    """Triplets under the rule: anchors of all identities in turn, gone through again while rows are wanted."""
+    """Triplets under the rule: anchors of all identities in turn, gone through again while rows are wanted.
+
+    `heed` is called now and then, and may raise to stop.
+    """
     identity_of, wanted, floor = material.roll.identity_of, recipe.triplets.counts[split], recipe.pairs.trust_floor
     a, b = mated_candidates(photos, identity_of, wanted, recipe.pairs.per_identity, rng)
     usable, _ = allowed.judged(a, b, material.trust.mated(a, b), floor, mated=True)
@@ -50,7 +55,10 @@ def sample_triplets(
         ahead = max(lacking, _AHEAD) if number else lacking
         now = order[np.arange(at, at + ahead) % len(order)]
         at += ahead
-        found = _with_negatives(material, recipe, photos, allowed, anchors[now], positives[now], rng)
+        found = []
+        for part in np.split(now, np.arange(_AHEAD, len(now), _AHEAD)):
+            heed()
+            found += _with_negatives(material, recipe, photos, allowed, anchors[part], positives[part], rng)
         new = [triplet for triplet in dict.fromkeys(found) if triplet not in chosen]
         if not new and (at > 2 * len(order) or number >= _IN_VAIN):
             break

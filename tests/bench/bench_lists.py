@@ -60,7 +60,7 @@ def main() -> None:
     material = _material(options.photos, options.of_each)
     before = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
     began = time.perf_counter()
-    lists = assemble(material, parse_recipe(DEFAULT_RECIPE_TEXT), lambda: None)
+    lists = assemble(material, parse_recipe(DEFAULT_RECIPE_TEXT), lambda _: None)
     ours = time.perf_counter() - began
     more = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024 - before
     rows = sum(len(part) for part in (*lists.pairs.values(), *lists.triplets.values()))

@@ -31,7 +31,7 @@ def material(made_ledger: Callable[..., Ledger]) -> Material:
 
 
 def _made(material: Material, text: str) -> Lists:
-    return assemble(material, parse_recipe(_TEST + text), lambda: None)
+    return assemble(material, parse_recipe(_TEST + text), lambda _: None)
 
 
 def test_a_cap_is_shared_between_mated_and_non_mated(material: Material) -> None:

@@ -62,7 +62,7 @@ def _made(roll: Roll, echoes: list[EchoGroup], settled: Settled, seed: int) -> t
     trust = fit_trust(x, everywhere, roll.identity_of, k, pair_answers={}, photo_answers={}, seed=1)
     fine = rng.random(len(roll)) < 0.9
     material = Material(roll, _readings(len(roll), x), trust, split_of, group_of, fine, echoes, settled)
-    return assemble(material, _RECIPE, lambda: None), split_of
+    return assemble(material, _RECIPE, lambda _: None), split_of
 
 
 @settings(max_examples=40, deadline=None)
