@@ -30,7 +30,7 @@ _DIGESTS = {
     _DETECTOR_FILE: "4cb19393e2fbaf2b1609a9319ad5386618c886a6234ec1b971f3e87c85d87fe6",
     _LANDMARK_FILE: "c4b1e9804792707d3a405c2c16a80a20269e6675021f64a41d30fffafbc41888",
 }
-_FORMAT = "2"
+_FORMAT = "3"
 """Raise it when what is written changes: older files are then left alone and new ones made."""
 
 EMBEDDER_DIGEST = _DIGESTS[_EMBEDDER_FILE]

@@ -1,4 +1,4 @@
-"""Finding faces: the detector over a pyramid scanned from its smallest level up, then five landmarks a face."""
+"""Finding faces: the detector over a pyramid, portraits' own level first, then five landmarks a face."""
 
 from __future__ import annotations
 
@@ -21,6 +21,9 @@ _LARGEST_FACE = 0.8
 """The first level looks for faces of this share of the photo's shorter side, and so finds any up to all of it."""
 _LEVEL_STEP = 1.3
 """Each level against the one before. The detector answers well to faces of 62 to 105 px, so levels may lie apart."""
+_PORTRAIT_LEVEL = 2
+"""The level scanned first, which answers to faces of about half the shorter side, as most portraits have them. Begun
+with the smallest level, two thirds of 404 drawn portraits were scanned three times and half as many pixels more."""
 _SMALLEST_FACE = 1.0 / 12.0
 """Share of the photo's longer side below which faces are not looked for: it bounds the work on large photos."""
 _MOST_ENLARGED = 2.6
@@ -60,8 +63,8 @@ class FaceFinder:
     def find(self, rgb: Pixels) -> list[Face]:
         """All faces of an (h, w, 3) uint8 photo down to `_SMALLEST_FACE`, if no larger one was found before.
 
-        Scans small levels first, since their work is small and the face of a portrait is large, and ends with the
-        first level that finds a convincing one; no level is scanned twice.
+        Scans the portraits' level, then the smaller ones, since their work is small, then the larger ones, and ends
+        with the first level that finds a convincing one; no level is scanned twice.
         """
         return [Face(box, score, self._landmarks(rgb, box)) for box, score in self.boxes(rgb)]
 
@@ -69,7 +72,8 @@ class FaceFinder:
         """The boxes alone: left, top, width, height and score, strongest first."""
         photo = Image.fromarray(rgb)
         found: list[tuple[Box, float]] = []
-        for size in level_sizes(photo.width, photo.height):
+        sizes = level_sizes(photo.width, photo.height)
+        for size in (*sizes[_PORTRAIT_LEVEL::-1], *sizes[_PORTRAIT_LEVEL + 1 :]):
             # Pillow first averages whole blocks of pixels: quick on large photos, and free of aliasing.
             level = photo.resize(size, Image.Resampling.BILINEAR, reducing_gap=2.0)
             found += self._scan(np.asarray(level), photo.width / size[0], photo.height / size[1])

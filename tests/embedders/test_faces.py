@@ -38,7 +38,7 @@ def _slow_predict(forests: Forests, rgb: Pixels, box: tuple[float, float, float,
     for r in range(len(forests.first)):
         turn = similarity_fit(forests.initial, shape.astype(np.float64))[:, :2].astype(np.float32)
         values = []
-        for anchor, offset in zip(forests.anchors[r], forests.offsets[r], strict=True):
+        for anchor, offset in zip(forests.anchors[r], forests.offsets[r].T, strict=True):
             place = turn @ offset + shape[anchor]
             x = math.floor(float(place[0]) * (right - left) + left + 0.5)
             y = math.floor(float(place[1]) * (bottom - top) + top + 0.5)
