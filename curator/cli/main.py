@@ -3,22 +3,33 @@
 from __future__ import annotations
 
 import os
+import signal
 import sys
+import threading
 import traceback
 from argparse import Namespace
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
+from io import TextIOWrapper
+from pathlib import Path
 
 from curator.cli.options import parser
 from curator.errors import BadInput, EnvironmentFailed, Stopped
 
 _FINE, _USAGE, _ENVIRONMENT, _INTERRUPTED = 0, 2, 3, 130
+_STOPPED = "Stopped; what is finished is kept, and the same command goes on from there."
 
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run one command. Returns 0 fine, 1 faults found, 2 wrong usage or bad input, 3 the environment failed, 130
     interrupted."""
+    _ready_streams()
     options = parser().parse_args(argv)
-    debug = getattr(options, "debug", False)
+    with _ended_by_interrupts():
+        return _run(options, debug=getattr(options, "debug", False))
+
+
+def _run(options: Namespace, *, debug: bool) -> int:
     try:
         code = _function(options.command)(options)
         sys.stdout.flush()
@@ -28,7 +39,7 @@ def main(argv: Sequence[str] | None = None) -> int:
     except EnvironmentFailed as error:
         return _told(error, _ENVIRONMENT, debug)
     except (KeyboardInterrupt, Stopped):
-        print("Stopped. What was finished is kept; the same command goes on from there.", file=sys.stderr)
+        print(_STOPPED, file=sys.stderr)
         return _INTERRUPTED
     except BrokenPipeError:
         # Whoever read our output has gone; that is no failure of ours, but Python must not try to flush it.
@@ -37,6 +48,38 @@ def main(argv: Sequence[str] | None = None) -> int:
     except OSError as error:
         where = f"{error.filename}: " if error.filename else ""
         return _told(EnvironmentFailed(f"{where}{error.strerror or error}."), _ENVIRONMENT, debug)
+
+
+def _ready_streams() -> None:
+    """Where whoever started us closed a stream, or it lacks a character, that is no failure."""
+    for name in ("stdout", "stderr"):
+        stream = getattr(sys, name)
+        if stream is None:
+            setattr(sys, name, Path(os.devnull).open("w"))  # noqa: SIM115 (open as long as the program runs)
+        elif isinstance(stream, TextIOWrapper):
+            stream.reconfigure(errors="backslashreplace")
+
+
+@contextmanager
+def _ended_by_interrupts() -> Iterator[None]:
+    """Ctrl-C ends the program at once wherever no progress is shown; `showing.progress` answers it more gently.
+
+    Not by an exception: one that is raised inside an import comes out as an error of the library's. What is written
+    without progress is one transaction of the ledger, which bears being killed.
+    """
+    if threading.current_thread() is not threading.main_thread():
+        yield
+        return
+
+    def end(*_: object) -> None:
+        os.write(2, f"{_STOPPED}\n".encode())
+        os._exit(_INTERRUPTED)
+
+    before = signal.signal(signal.SIGINT, end)
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGINT, before)
 
 
 def _told(error: Exception, code: int, debug: bool) -> int:

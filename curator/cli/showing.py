@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 import json
+import math
 import signal
 import sys
 from collections.abc import Iterable, Iterator, Sequence
 from contextlib import contextmanager
+from io import TextIOWrapper
 from typing import Any
 
 from rich.console import Console
@@ -29,7 +31,7 @@ class Shown:
     def __init__(self, bars: Bars, console: Console) -> None:
         self._bars, self._console = bars, console
         self._task: Any = None
-        self._stop = False
+        self._stop = self._said = False
 
     def begin(self, task: str, total: int | None) -> None:
         if self._task is not None:
@@ -45,14 +47,16 @@ class Shown:
         self._console.print(message, highlight=False, markup=False, soft_wrap=True)
 
     def stop_wanted(self) -> bool:
+        if self._stop and not self._said:
+            self._said = True
+            self.note("Stopping after what is in hand; press Ctrl-C again to stop at once.")
         return self._stop
 
     def ask_to_stop(self, *_: object) -> None:
-        """A signal handler."""
+        """A signal handler; it prints nothing, for it may have come in the middle of printing."""
         if self._stop:
             raise KeyboardInterrupt
         self._stop = True
-        self.note("Stopping after what is in hand; press Ctrl-C again to stop at once.")
 
 
 @contextmanager
@@ -76,14 +80,41 @@ def progress() -> Iterator[Shown]:
 
 
 def as_json(document: Any) -> None:
-    """One JSON document on stdout."""
-    json.dump(document, sys.stdout, ensure_ascii=False, indent=1)
-    sys.stdout.write("\n")
+    """One JSON document (RFC 8259) on stdout; nothing of it is written before it is whole."""
+    told = json.dumps(_finite(document), ensure_ascii=False, allow_nan=False, indent=1)
+    if not _is_unicode(told):
+        # A path whose bytes are no UTF-8: its stand-ins can be escaped, not encoded.
+        told = json.dumps(_finite(document), allow_nan=False, indent=1)
+    text(f"{told}\n")
 
 
-def line(text: str) -> None:
+def text(told: str) -> None:
+    """Text for other programs on stdout: UTF-8, whatever the locale of people is."""
+    if isinstance(sys.stdout, TextIOWrapper):
+        sys.stdout.reconfigure(encoding="utf-8")
+    sys.stdout.write(told)
+
+
+def _finite(value: Any) -> Any:
+    """JSON knows no nan and no infinity: what is undefined is null."""
+    if isinstance(value, float):
+        return value if math.isfinite(value) else None
+    if isinstance(value, dict):
+        return {key: _finite(held) for key, held in value.items()}
+    return [_finite(held) for held in value] if isinstance(value, list | tuple) else value
+
+
+def _is_unicode(told: str) -> bool:
+    try:
+        told.encode()
+    except UnicodeEncodeError:
+        return False
+    return True
+
+
+def line(told: str) -> None:
     """One line on stdout."""
-    Console(soft_wrap=True).print(text, highlight=False, markup=False)
+    Console(soft_wrap=True).print(told, highlight=False, markup=False)
 
 
 def table(title: str, header: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator
-from concurrent.futures import ProcessPoolExecutor
+from collections.abc import Callable, Generator, Iterable
+from contextlib import closing
 from pathlib import Path
 
 from curator.demo.answers import AnswerSheet, sheet_text
@@ -11,6 +11,7 @@ from curator.demo.faults import Faults
 from curator.demo.job import Job, draw_photo
 from curator.demo.plan import PEOPLE, PHOTOS_EACH, SEED, SIBLINGS, Plan, plan_demo
 from curator.errors import BadInput, EnvironmentFailed
+from curator.intake.pool import Processes
 
 PHOTOS, SHEET, ATTRIBUTES = "photos", "answer_sheet.json", "attributes.csv"
 
@@ -48,21 +49,23 @@ def _write(target: Path, plan: Plan, workers: int, drawn: Callable[[int], None] 
     photos.mkdir(parents=True, mode=0o700, exist_ok=True)
     for folder in sorted({path.rpartition("/")[0] for path in plan.jobs}):
         (photos / folder).mkdir(mode=0o700)
-    for path, data in zip(plan.jobs, _files(plan.jobs.values(), workers), strict=True):
-        _private(photos / path, data)
-        if drawn is not None:
-            drawn(1)
+    # Closed, so that after a stop nobody draws on.
+    with closing(_files(plan.jobs.values(), workers)) as files:
+        for path, data in zip(plan.jobs, files, strict=True):
+            _private(photos / path, data)
+            if drawn is not None:
+                drawn(1)
     _private(photos / ATTRIBUTES, plan.attributes.encode())
     _private(target / SHEET, sheet_text(plan.sheet).encode())
 
 
-def _files(jobs: Iterable[Job], workers: int) -> Iterator[bytes]:
+def _files(jobs: Iterable[Job], workers: int) -> Generator[bytes, None, None]:
     """The photos' bytes, in order."""
     if workers == 1:
         yield from map(draw_photo, jobs)
         return
-    with ProcessPoolExecutor(workers) as pool:
-        yield from pool.map(draw_photo, jobs, chunksize=8)
+    with Processes(workers) as pool:
+        yield from pool.map(draw_photo, jobs, chunksize=2)
 
 
 def _private(path: Path, data: bytes) -> None:

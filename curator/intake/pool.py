@@ -3,11 +3,15 @@
 from __future__ import annotations
 
 import multiprocessing
+import signal
+import sys
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wait
 from concurrent.futures.process import BrokenProcessPool
+from contextlib import contextmanager
 from dataclasses import replace
+from typing import Any
 
 from curator.domain import PhotoFile, Reading
 from curator.intake.chunks import Result, Task
@@ -19,6 +23,31 @@ _AHEAD = 2
 _POLL_SECONDS = 0.2
 
 ReadChunk = Callable[[Task], Result]
+
+
+class Processes(ProcessPoolExecutor):
+    """Worker processes that Ctrl-C does not reach, not even while they start: the parent alone answers it."""
+
+    def __init__(self, workers: int) -> None:
+        # Spawned, not forked: sessions and threads of the parent do not survive a fork, its signal handlers would.
+        super().__init__(workers, mp_context=multiprocessing.get_context("spawn"), initializer=settle_in)
+
+    def submit(self, /, *arguments: Any, **named: Any) -> Future[Any]:
+        with _interrupts_held():
+            return super().submit(*arguments, **named)
+
+
+@contextmanager
+def _interrupts_held() -> Iterator[None]:
+    """Ctrl-C reaches this process after the block, and never the processes that start inside: they inherit the mask."""
+    if sys.platform == "win32":
+        yield
+        return
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 def run(
@@ -41,7 +70,7 @@ def run(
 def _until_broken(
     waiting: deque[Task], read: ReadChunk, workers: int, stop_wanted: Callable[[], bool], broken: list[Task]
 ) -> Iterator[tuple[Result, tuple[str, ...]]]:
-    pool = _pool(workers)
+    pool = Processes(workers)
     flying: dict[Future[Result], Task] = {}
     try:
         while (waiting or flying) and not broken:
@@ -69,21 +98,16 @@ def _one_by_one(task: Task, read: ReadChunk) -> tuple[Result, tuple[str, ...]]:
     files: list[PhotoFile] = []
     readings: dict[str, Reading] = {}
     died: list[str] = []
-    pool = _pool(1)
+    pool = Processes(1)
     for file in task.files:
         try:
             result = pool.submit(read, replace(task, files=(file,))).result()
         except BrokenProcessPool:
             pool.shutdown(wait=False)
-            pool = _pool(1)
+            pool = Processes(1)
             died.append(file.name)
             result = Result((replace(file, digest=None, why=DIED),), ())
         files.extend(result.files)
         readings.update({reading.digest: reading for reading in result.readings})
     pool.shutdown()
     return Result(tuple(files), tuple(readings.values())), tuple(died)
-
-
-def _pool(workers: int) -> ProcessPoolExecutor:
-    # Spawned, not forked: sessions and threads of the parent do not survive a fork.
-    return ProcessPoolExecutor(workers, mp_context=multiprocessing.get_context("spawn"), initializer=settle_in)
