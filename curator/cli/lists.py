@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import sys
 from argparse import Namespace
 from dataclasses import asdict
 from pathlib import Path
@@ -32,7 +31,7 @@ def verdicts(options: Namespace) -> int:
                     {"verdicts": [{"verdict": v.answer.value} | {k: getattr(v, k) for k in keys} for v in said]}
                 )
             else:
-                sys.stdout.write(write_verdicts(said).replace("\r\n", "\n"))
+                showing.text(write_verdicts(said).replace("\r\n", "\n"))
             return 0
         report = agreement(ledger)
     if options.json:

@@ -40,4 +40,9 @@ def desk(options: Namespace) -> int:
     except ImportError as error:
         hint = f" On Debian and its kin: {_APT}" if sys.platform == "linux" else ""
         raise EnvironmentFailed(f"The window cannot open, for Qt lacks a system library ({error}).{hint}") from error
-    return open_desk(getattr(options, "ledger", None))
+    # Without a command there are no options of the command either.
+    ledger = getattr(options, "ledger", None)
+    code = open_desk(ledger)
+    if getattr(options, "json", False):
+        showing.as_json({"ledger": None if ledger is None else str(ledger)})
+    return code
