@@ -1,6 +1,8 @@
 """The commands as a script would use them: JSON shapes, exit codes, one sentence for every error."""
 
+import errno
 import json
+import os
 import shutil
 import subprocess
 import sys
@@ -12,6 +14,9 @@ import pytest
 from PIL import Image
 
 from curator.cli.main import main
+from curator.cli.options import parser
+from curator.demo.scoring import Row
+from curator.demo.step import DemoReport
 
 _RECIPE = """
 [split]
@@ -44,14 +49,15 @@ def work(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return base
 
 
-@pytest.fixture
-def portraits(tmp_path: Path) -> Path:
+@pytest.fixture(scope="module")
+def portraits(tmp_path_factory: pytest.TempPathFactory) -> Path:
     """A ledger over some of the drawn portraits: photos that an edition may be made of."""
+    base = tmp_path_factory.mktemp("portraits")
     for folder in sorted((Path(__file__).parents[2] / "demo_faces" / "photos").glob("r-*"))[:6]:
-        shutil.copytree(folder, tmp_path / "photos" / folder.name)
-    (tmp_path / "recipe.toml").write_text(_RECIPE)
-    assert main(["intake", str(tmp_path / "photos"), "--ledger", str(tmp_path / "ledger")]) == 0
-    return tmp_path
+        shutil.copytree(folder, base / "photos" / folder.name)
+    (base / "recipe.toml").write_text(_RECIPE)
+    assert main(["intake", str(base / "photos"), "--ledger", str(base / "ledger")]) == 0
+    return base
 
 
 def _json(capsys: pytest.CaptureFixture[str], *arguments: object) -> Any:
@@ -127,23 +133,70 @@ def test_tables_for_people(work: Path, capsys: pytest.CaptureFixture[str], comma
     assert len(capsys.readouterr().out.splitlines()) >= 1
 
 
-def test_bad_input_is_one_sentence(work: Path, capsys: pytest.CaptureFixture[str]) -> None:
-    for arguments in (
-        ["roll", "--ledger", str(work / "nowhere")],
-        ["split", "--ledger", str(work / "ledger"), "--recipe", str(work / "gone.toml")],
-        ["audit", str(work / "gone")],
-        ["compare", str(work / "photos"), str(work / "gone")],
-        ["pairs", "--ledger", str(work / "ledger"), "--limit", "0"],
-    ):
-        capsys.readouterr()
-        assert main(arguments) == 2
-        told = capsys.readouterr()
-        assert told.out == ""
-        assert len([line for line in told.err.splitlines() if line.startswith("pairwright: ")]) == 1
-        assert "Traceback" not in told.err
+_BAD = {
+    "intake": "intake {work}/gone --ledger {work}/new",
+    "roll": "roll --ledger {work}/gone",
+    "echoes": "echoes --ledger {work}/gone",
+    "doubts": "doubts --ledger {work}/gone",
+    "pairs": "pairs --ledger {work}/ledger --limit 0",
+    "verdicts put": "verdicts put {work}/gone --ledger {work}/ledger",
+    "verdicts get": "verdicts get --ledger {work}/gone",
+    "verdicts agreement": "verdicts agreement --ledger {work}/gone",
+    "split": "split --ledger {work}/ledger --recipe {work}/gone",
+    "edition": "edition --ledger {work}/ledger --recipe {work}/recipe.toml --out {work}/photos",
+    "audit": "audit {work}/gone",
+    "compare": "compare {work}/photos {work}/gone",
+    "desk": "desk --ledger {work}/gone",
+    "demo": "demo {work}/photos",
+}
+
+
+def test_every_command_is_given_bad_input() -> None:
+    top = parser()._subparsers
+    assert top is not None
+    (commands,) = (set(action.choices or ()) for action in top._group_actions)
+    assert commands == {name.split()[0] for name in _BAD}
+
+
+@pytest.mark.parametrize("json_wanted", [True, False])
+@pytest.mark.parametrize("command", _BAD)
+def test_bad_input_is_one_sentence(
+    work: Path, capsys: pytest.CaptureFixture[str], command: str, *, json_wanted: bool
+) -> None:
+    arguments = _BAD[command].format(work=work).split()
+    capsys.readouterr()
+    assert main([*arguments, *(["--json"] if json_wanted else [])]) == 2
+    told = capsys.readouterr()
+    assert told.out == ""
+    assert len([line for line in told.err.splitlines() if line.startswith("pairwright: ")]) == 1
+    assert "Traceback" not in told.err
+
+
+def test_wrong_usage(capsys: pytest.CaptureFixture[str]) -> None:
     with pytest.raises(SystemExit) as stopped:
-        main(["roll"])
+        main(["roll", "--json"])
     assert stopped.value.code == 2
+    assert capsys.readouterr().out == ""
+
+
+def test_compare(work: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    shutil.copytree(work / "photos" / "p3", tmp_path / "x")
+    shared = _json(capsys, "compare", work / "photos", tmp_path, "--framing", "whole", "--workers", 1)
+    assert shared["photos"] == [26, 3]
+    assert {(link["a"], link["b"]) for link in shared["echoes"]} == {(f"p3/{n}.png", f"x/{n}.png") for n in range(3)}
+
+
+def test_the_demo_and_the_window_tell_of_themselves_too(
+    capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    report = DemoReport(Path("tarn"), 9, 3, (Row("no-face", 1, 1, 0, 0),), {}, (), float("nan"), sound=True)
+    monkeypatch.setattr("curator.demo.step.run_demo", lambda *_, **__: report)
+    assert _json(capsys, "demo", "tarn") | {"folder": "tarn", "equal_error_rate": None, "sound": True} == _json(
+        capsys, "demo", "tarn"
+    )
+    monkeypatch.setattr("curator.desktop.window.open_desk", lambda _: 0)
+    assert _json(capsys, "desk", "--ledger", "tarn/ledger") == {"ledger": "tarn/ledger"}
+    assert _json(capsys, "desk") == {"ledger": None}
 
 
 def test_a_mistyped_root_does_not_stand_in_the_way_of_the_right_one(
@@ -158,6 +211,51 @@ def test_a_mistyped_root_does_not_stand_in_the_way_of_the_right_one(
     assert main(["intake", str(work / "photos"), *ledger]) == 0
     assert main(["intake", str(tmp_path / "empty"), *ledger]) == 2
     assert "belongs to the photo root" in capsys.readouterr().err
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="limits the size of files")
+@pytest.mark.parametrize("command", ["intake", "demo"])
+def test_a_full_disk_is_an_environment_failure(portraits: Path, tmp_path: Path, command: str) -> None:
+    """Files may not grow above some kilobytes here, which reaches us as a full disk does."""
+    arguments, kilobytes = {
+        "intake": (f"intake {portraits}/photos --ledger {tmp_path}/ledger", 150),
+        "demo": (f"demo {tmp_path}/tarn", 4),
+    }[command]
+    limited = f"ulimit -f {kilobytes}; exec {sys.executable} -m curator.cli {arguments} --json"
+    done = subprocess.run(["bash", "-c", limited], capture_output=True, text=True, check=False)
+    assert (done.returncode, done.stdout) == (3, ""), done.stderr
+    assert len([line for line in done.stderr.splitlines() if line.startswith("pairwright: ")]) == 1
+    assert "Traceback" not in done.stderr
+    assert list(tmp_path.iterdir()) == list(tmp_path.glob("ledger"))
+    if command == "intake":
+        assert main(arguments.split()) == 0
+
+
+def test_an_edition_on_a_full_disk_leaves_nothing(
+    portraits: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def full(_: int) -> None:
+        raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
+
+    monkeypatch.setattr(os, "fsync", full)
+    before, out = sorted(portraits.iterdir()), portraits / "another"
+    recipe = ("--ledger", str(portraits / "ledger"), "--recipe", str(portraits / "recipe.toml"))
+    capsys.readouterr()
+    assert main(["edition", *recipe, "--out", str(out), "--json"]) == 3
+    told = capsys.readouterr()
+    assert told.out == ""
+    assert told.err.endswith(f"pairwright: The edition could not be written to {out}: No space left on device.\n")
+    assert sorted(portraits.iterdir()) == before
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="writes to the device that is always full")
+@pytest.mark.parametrize("json_wanted", ["", "--json"])
+def test_an_answer_that_cannot_be_written_is_an_environment_failure(work: Path, json_wanted: str) -> None:
+    command = f"{sys.executable} -m curator.cli roll --ledger {work / 'ledger'} {json_wanted}"
+    full = subprocess.run(["bash", "-c", f"{command} > /dev/full"], capture_output=True, text=True, check=False)
+    assert (full.returncode, full.stderr) == (3, "pairwright: No space left on device.\n")
+    closed = subprocess.run(["bash", "-c", f"{command} >&-"], capture_output=True, text=True, check=False)
+    assert (closed.returncode, closed.stderr) == (0, "")
 
 
 def test_a_damaged_ledger_is_an_environment_failure(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
