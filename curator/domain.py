@@ -126,12 +126,12 @@ class Reading:
     eye_distance: float | None = None
     """Pixels between the centres of the eyes."""
     thumbnail: bytes = b""
-    """JPEG, RGB, longest side `THUMBNAIL_SIDE` pixels at most."""
+    """JPEG, RGB, shorter side 169 pixels at most, longer side `LONGEST_THUMBNAIL` at most."""
     embedding: Floats | None = None
     """float32, shape (d,), unit length where the card's measure is cosine."""
 
 
-THUMBNAIL_SIDE = 192
+LONGEST_THUMBNAIL = 676
 
 
 @dataclass(frozen=True, slots=True)

@@ -29,27 +29,24 @@ def crop_transform(landmarks: NDArray[np.float64], size: int = 150) -> NDArray[n
     return similarity_fit(template, np.asarray(landmarks, dtype=np.float64))
 
 
-def aligned_crop(rgb: Pixels, landmarks: NDArray[np.float64], size: int = 150) -> Pixels:
-    """The (size, size, 3) uint8 crop of an (h, w, 3) photo; black outside the photo, bilinear between pixels."""
+def aligned_crop(photo: Image.Image, landmarks: NDArray[np.float64], size: int = 150) -> Pixels:
+    """The (size, size, 3) uint8 crop of an RGB photo; black outside the photo, bilinear between pixels."""
     transform = crop_transform(landmarks, size)
     scale = float(np.hypot(transform[0, 0], transform[1, 0]))
-    height, width = rgb.shape[:2]
-    corners = np.array([[0, 0, 1], [size, 0, 1], [0, size, 1], [size, size, 1]]) @ transform.T
-    margin = 4.0 * max(1.0, scale)
-    left, top = np.maximum(np.floor(corners.min(axis=0) - margin), 0).astype(int)
-    right, bottom = np.minimum(np.ceil(corners.max(axis=0) + margin), [width, height]).astype(int)
-    if right <= left or bottom <= top:
-        return np.zeros((size, size, 3), dtype=np.uint8)
-    part = Image.fromarray(rgb[top:bottom, left:right])
     # Bilinear reads two pixels a side whatever the scale: where the crop shrinks the photo, average first.
     factor = max(1, int(scale))
+    left, top = 0, 0
     if factor > 1:
-        part = part.reduce(factor)
-    to_part = transform.copy()
+        corners = np.array([[0, 0, 1], [size, 0, 1], [0, size, 1], [size, size, 1]]) @ transform.T
+        left, top = np.maximum(np.floor(corners.min(axis=0) - 4.0 * scale), 0).astype(int).tolist()
+        right, bottom = np.minimum(np.ceil(corners.max(axis=0) + 4.0 * scale), photo.size).astype(int).tolist()
+        if right <= left or bottom <= top:
+            return np.zeros((size, size, 3), dtype=np.uint8)
+        photo = photo.crop((left, top, right, bottom)).reduce(factor)
     # Pillow's pixel centres lie at halves.
-    to_part[:, 2] += 0.5 - 0.5 * (transform[:, 0] + transform[:, 1]) - (left, top)
-    to_part /= factor
-    crop = part.transform((size, size), Image.Transform.AFFINE, to_part.ravel().tolist(), Image.Resampling.BILINEAR)
+    transform[:, 2] += 0.5 - 0.5 * (transform[:, 0] + transform[:, 1]) - (left, top)
+    transform /= factor
+    crop = photo.transform((size, size), Image.Transform.AFFINE, transform.ravel().tolist(), Image.Resampling.BILINEAR)
     return np.asarray(crop)
 
 

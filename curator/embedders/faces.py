@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -11,6 +12,7 @@ from PIL import Image
 from curator.domain import Pixels
 from curator.embedders import building, landmarks
 from curator.embedders.alignment import aligned_crop, eye_distance
+from curator.embedders.landmarks import Box
 from curator.embedders.session import open_built
 
 _WINDOW = 80.0
@@ -35,9 +37,7 @@ _CONVINCING = 0.5
 Companions in a photo are mostly of like size, and the level that finds one finds them all."""
 _OVERLAP = 0.3
 
-__all__ = ["Face", "FaceFinder", "aligned_crop", "eye_distance", "level_sizes"]
-
-Box = tuple[float, float, float, float]
+__all__ = ["Face", "FaceFinder", "aligned_crop", "at_level", "eye_distance", "level_sizes", "portrait_level"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,22 +60,29 @@ class FaceFinder:
         self._session = open_built(building.detector_path, threads=threads)
         self._forests = building.forests()
 
-    def find(self, rgb: Pixels) -> list[Face]:
-        """All faces of an (h, w, 3) uint8 photo down to `_SMALLEST_FACE`, if no larger one was found before.
+    def find(self, photo: Image.Image) -> list[Face]:
+        """The faces of one photo; see `find_in`."""
+        return self.find_in([(photo, None)])[0]
+
+    def find_in(self, photos: Sequence[tuple[Image.Image, Image.Image | None]]) -> list[list[Face]]:
+        """All faces of each RGB photo down to `_SMALLEST_FACE`, if no larger one was found before.
 
         Scans the portraits' level, then the smaller ones, since their work is small, then the larger ones, and ends
-        with the first level that finds a convincing one; no level is scanned twice.
+        with the first level that finds a convincing one; no level is scanned twice. Beside each photo stands the
+        same at `portrait_level`, where the caller has made it already.
         """
-        return [Face(box, score, self._landmarks(rgb, box)) for box, score in self.boxes(rgb)]
+        boxes = [self.boxes(photo, level) for photo, level in photos]
+        pixels = [np.asarray(photo) for (photo, _), found in zip(photos, boxes, strict=True) for _ in found]
+        points = iter(landmarks.predict(self._forests, pixels, [_whole(box) for found in boxes for box, _ in found]))
+        return [[Face(box, score, next(points)) for box, score in found] for found in boxes]
 
-    def boxes(self, rgb: Pixels) -> list[tuple[Box, float]]:
+    def boxes(self, photo: Image.Image, level: Image.Image | None = None) -> list[tuple[Box, float]]:
         """The boxes alone: left, top, width, height and score, strongest first."""
-        photo = Image.fromarray(rgb)
         found: list[tuple[Box, float]] = []
         sizes = level_sizes(photo.width, photo.height)
         for size in (*sizes[_PORTRAIT_LEVEL::-1], *sizes[_PORTRAIT_LEVEL + 1 :]):
-            # Pillow first averages whole blocks of pixels: quick on large photos, and free of aliasing.
-            level = photo.resize(size, Image.Resampling.BILINEAR, reducing_gap=2.0)
+            if level is None or level.size != size:
+                level = at_level(photo, size)
             found += self._scan(np.asarray(level), photo.width / size[0], photo.height / size[1])
             if any(score >= _CONVINCING for _, score in found):
                 break
@@ -97,9 +104,23 @@ class FaceFinder:
             for y, x in zip(rows.tolist(), columns.tolist(), strict=True)
         ]
 
-    def _landmarks(self, rgb: Pixels, box: Box) -> NDArray[np.float64]:
-        left, top, width, height = (float(np.floor(value + 0.5)) for value in box)
-        return landmarks.predict(self._forests, rgb, (left, top, left + width - 1, top + height - 1))
+
+def _whole(box: Box) -> Box:
+    """Left, top, right and bottom of a box in whole pixels, both ends included."""
+    left, top, width, height = (float(np.floor(value + 0.5)) for value in box)
+    return left, top, left + width - 1, top + height - 1
+
+
+def at_level(photo: Image.Image, size: tuple[int, int]) -> Image.Image:
+    """The photo at the size of a level."""
+    # Pillow first averages whole blocks of pixels: quick on large photos, and free of aliasing.
+    return photo.resize(size, Image.Resampling.BILINEAR, reducing_gap=2.0)
+
+
+def portrait_level(width: int, height: int) -> tuple[int, int] | None:
+    """The size of the level that is scanned first; None for strips so narrow that they have none."""
+    sizes = level_sizes(width, height)
+    return sizes[_PORTRAIT_LEVEL] if len(sizes) > _PORTRAIT_LEVEL else None
 
 
 def level_sizes(width: int, height: int) -> list[tuple[int, int]]:

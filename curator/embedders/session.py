@@ -81,11 +81,14 @@ class Embedder:
     def _run(self, crops: Pixels) -> NDArray[np.float32]:
         card = self.card
         pictures = crops[..., ::-1] if card.channel_order == "bgr" else crops
-        values = pictures.astype(np.float32)
-        values -= np.array(card.mean, dtype=np.float32)
-        values *= np.array(card.scale, dtype=np.float32)
+        mean, scale = np.array(card.mean, dtype=np.float32), np.array(card.scale, dtype=np.float32)
         if card.layout == "nchw":
-            values = np.ascontiguousarray(values.transpose(0, 3, 1, 2))
+            # While the pictures are bytes: to move four times as much, in stretches of three, costs ten times as much.
+            pictures = pictures.transpose(0, 3, 1, 2)
+            mean, scale = mean.reshape(-1, 1, 1), scale.reshape(-1, 1, 1)
+        values = np.ascontiguousarray(pictures).astype(np.float32)
+        values -= mean
+        values *= scale
         if self._one_at_a_time:
             rows = [self._session.run([self._output], {self._input: values[i : i + 1]})[0] for i in range(len(values))]
             result = np.concatenate(rows)

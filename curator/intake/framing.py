@@ -12,7 +12,8 @@ from PIL import Image
 from curator.domain import Pixels
 from curator.embedders.faces import Face, aligned_crop, eye_distance
 
-FindFaces = Callable[[Pixels], Sequence[Face]]
+FindFaces = Callable[[Sequence[tuple[Image.Image, Image.Image]]], Sequence[Sequence[Face]]]
+"""From photos, each with the same at the size of the detector's first level beside it, to the faces of each."""
 
 
 @dataclass(frozen=True)
@@ -26,25 +27,32 @@ class Framed:
     eye_distance: float | None = None
 
 
-def frame(image: Image.Image, framing: str, size: int, find_faces: FindFaces | None) -> Framed:
-    """Frame an RGB photo as `face`, `whole` or `box:left,top,width,height` (fractions) into side `size`."""
+def frame(
+    photos: Sequence[tuple[Image.Image, Image.Image]], framing: str, size: int, find_faces: FindFaces | None
+) -> list[Framed]:
+    """Frame RGB photos as `face`, `whole` or `box:left,top,width,height` (fractions) into side `size`.
+
+    Beside each photo stands the same at the size of the detector's first level, or as it is where that is smaller.
+    """
     if framing == "face" and find_faces is not None:
-        return _face(np.asarray(image), size, find_faces)
-    width, height = image.size
+        found = find_faces(photos)
+        return [_face(image, faces, size) for (image, _), faces in zip(photos, found, strict=True)]
     left, top, wide, high = (0.0, 0.0, 1.0, 1.0) if framing == "whole" else _fractions(framing)
-    box = (left * width, top * height, wide * width, high * height)
-    return Framed(crop=_stretched(image, box, size), frame=box)
+    framed = []
+    for image, _ in photos:
+        width, height = image.size
+        box = (left * width, top * height, wide * width, high * height)
+        framed.append(Framed(crop=_stretched(image, box, size), frame=box))
+    return framed
 
 
-def _face(rgb: Pixels, size: int, find_faces: FindFaces) -> Framed:
-    faces = find_faces(rgb)
+def _face(image: Image.Image, faces: Sequence[Face], size: int) -> Framed:
     if not faces:
         return Framed(crop=None, faces=0)
-    height, width = rgb.shape[:2]
-    chosen = max(faces, key=lambda face: _prominence(face, width, height))
+    chosen = max(faces, key=lambda face: _prominence(face, *image.size))
     landmarks = tuple((float(x), float(y)) for x, y in chosen.landmarks)
     return Framed(
-        crop=aligned_crop(rgb, chosen.landmarks, size),
+        crop=aligned_crop(image, chosen.landmarks, size),
         faces=len(faces),
         frame=chosen.box,
         landmarks=landmarks,

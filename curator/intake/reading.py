@@ -3,17 +3,19 @@
 from __future__ import annotations
 
 import io
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from PIL import Image
 
-from curator.domain import THUMBNAIL_SIDE, Pixels, Reading
+from curator.domain import LONGEST_THUMBNAIL, Pixels, Reading
+from curator.embedders.faces import at_level, portrait_level
 from curator.intake.decoding import UndecodableError, decode
-from curator.intake.framing import FindFaces, frame
+from curator.intake.framing import FindFaces, Framed, frame
 from curator.intake.hashes import dct_hash, difference_hash, mirror_hash, reduced
 from curator.intake.measures import measure
 
-VERSION = "reading-3"
+VERSION = "reading-4"
 """Raise it when what is read from the same bytes changes: the next intake then reads everything again."""
 _THUMBNAIL_QUALITY = 88
 
@@ -28,26 +30,56 @@ class Settings:
     pixel_limit: int
 
 
-def read_photo(
-    data: bytes, digest: str, settings: Settings, find_faces: FindFaces | None
-) -> tuple[Reading, Pixels | None]:
-    """The reading of a file's bytes, its embedding still missing, and the crop to embed (None where there is none)."""
+@dataclass(frozen=True)
+class Decoded:
+    """A photo on its way to its reading."""
+
+    digest: str
+    file_bytes: int
+    image: Image.Image
+    """RGB, upright."""
+
+    @property
+    def pixels(self) -> int:
+        return self.image.width * self.image.height
+
+
+def decode_photo(data: bytes, digest: str, settings: Settings) -> Decoded | Reading:
+    """The photo of a file's bytes, or where there is none the reading that says why."""
     try:
         image = decode(data, pixel_limit=settings.pixel_limit)
     except UndecodableError as error:
-        return Reading(digest=digest, why=str(error), file_bytes=len(data)), None
+        return Reading(digest=digest, why=str(error), file_bytes=len(data))
+    return Decoded(digest, len(data), image)
+
+
+def read_photos(
+    photos: Sequence[Decoded], settings: Settings, find_faces: FindFaces | None
+) -> list[tuple[Reading, Pixels | None]]:
+    """The reading of each photo, its embedding still missing, and the crop to embed (None where there is none)."""
+    small = [_made_small(photo.image) for photo in photos]
+    framed = frame(
+        [(photo.image, level) for photo, level in zip(photos, small, strict=True)],
+        settings.framing,
+        settings.size,
+        find_faces,
+    )
+    return [(_reading(*parts), parts[2].crop) for parts in zip(photos, small, framed, strict=True)]
+
+
+def _reading(photo: Decoded, small: Image.Image, framed: Framed) -> Reading:
+    image = photo.image
     grey = image.convert("L")  # one conversion serves three hashes and the measures
-    small = reduced(grey)
-    framed = frame(image, settings.framing, settings.size, find_faces)
+    tiny = reduced(grey)
     measures = measure(grey, image if framed.crop is None else Image.fromarray(framed.crop))
-    reading = Reading(
-        digest=digest,
-        file_bytes=len(data),
+    return Reading(
+        digest=photo.digest,
+        file_bytes=photo.file_bytes,
         width=image.width,
         height=image.height,
-        dct=dct_hash(small),
+        dct=dct_hash(tiny),
         difference=difference_hash(grey),
-        mirror=mirror_hash(small),
+        mirror=mirror_hash(tiny),
         sharpness=measures.sharpness,
         brightness=measures.brightness,
         contrast=measures.contrast,
@@ -56,17 +88,20 @@ def read_photo(
         frame=framed.frame,
         landmarks=framed.landmarks,
         eye_distance=framed.eye_distance,
-        thumbnail=_thumbnail(image),
+        thumbnail=_thumbnail(small),
     )
-    return reading, framed.crop
 
 
-def _thumbnail(image: Image.Image) -> bytes:
-    small = image
-    if max(image.size) > THUMBNAIL_SIDE:
-        scale = THUMBNAIL_SIDE / max(image.size)
+def _made_small(image: Image.Image) -> Image.Image:
+    """The photo at the size of the detector's first level, for the detector and the thumbnail; never enlarged."""
+    size = portrait_level(*image.size)
+    if size is None or max(size) > LONGEST_THUMBNAIL:
+        scale = LONGEST_THUMBNAIL / max(image.size)
         size = (max(1, round(image.width * scale)), max(1, round(image.height * scale)))
-        small = image.resize(size, Image.Resampling.BILINEAR, reducing_gap=3.0)
+    return image if size[0] >= image.width else at_level(image, size)
+
+
+def _thumbnail(small: Image.Image) -> bytes:
     buffer = io.BytesIO()
     small.save(buffer, "JPEG", quality=_THUMBNAIL_QUALITY)
     return buffer.getvalue()

@@ -36,21 +36,20 @@ def milliseconds(work: Callable[[], object], times: int = 5) -> float:
     return 1000.0 * median(took)
 
 
-def portraits() -> list[Pixels]:
+def portraits() -> list[Image.Image]:
     """A share of the drawn set; the files damaged on purpose are passed over."""
     found = []
     for path in sorted(_PORTRAITS.rglob("*.*"))[::_EVERY]:
         try:
             with Image.open(path) as opened:
-                found.append(np.asarray(opened.convert("RGB")))
+                found.append(opened.convert("RGB"))
         except OSError:
             continue
     return found
 
 
-def full_scan(finder: FaceFinder, rgb: Pixels) -> None:
+def full_scan(finder: FaceFinder, photo: Image.Image) -> None:
     """Every level of a pyramid with step 5/6, from the largest that `find` may reach down to the window's size."""
-    photo = Image.fromarray(rgb)
     width, height = faces.level_sizes(photo.width, photo.height)[-1]
     while min(width, height) >= 80:
         finder._scan(np.asarray(photo.resize((width, height), Image.Resampling.BILINEAR)), 1.0, 1.0)
@@ -61,24 +60,24 @@ def main() -> None:
     finder, embedder = FaceFinder(), Embedder(load_card())
     photos = portraits()
 
-    def framed(rgb: Pixels) -> list[Pixels]:
-        return [aligned_crop(rgb, face.landmarks) for face in finder.find(rgb)[:1]]
+    def framed(photo: Image.Image) -> list[Pixels]:
+        return [aligned_crop(photo, face.landmarks) for face in finder.find(photo)[:1]]
 
-    crops = np.stack([crop for rgb in photos for crop in framed(rgb)][:32])
+    crops = np.stack([crop for photo in photos for crop in framed(photo)][:32])
     embedding = milliseconds(lambda: embedder.embed(crops)) / len(crops)
     alone = milliseconds(lambda: embedder.embed(crops[:1]))
     print(f"embedding: {embedding:.1f} ms a crop in batches, {alone:.1f} alone")
-    each = [milliseconds(lambda rgb=rgb: framed(rgb), 3) for rgb in photos]  # type: ignore[misc]
-    found = sum(bool(framed(rgb)) for rgb in photos)
+    each = [milliseconds(lambda photo=photo: framed(photo), 3) for photo in photos]  # type: ignore[misc]
+    found = sum(bool(framed(photo)) for photo in photos)
     print(
         f"{len(photos)} portraits, faces found in {found}: framing {median(each):.1f} ms (median), "
         f"{sum(each) / len(each):.1f} (mean); ratio to embedding {median(each) / embedding:.2f}"
     )
     scan, ours = (milliseconds(lambda f=f: f(photos[0]), 3) for f in (lambda p: full_scan(finder, p), framed))  # type: ignore[misc]
     print(f"one portrait: full scan {scan:.0f} ms, ours {ours:.1f} ms, ratio {scan / ours:.1f}")
-    large = np.asarray(Image.fromarray(photos[0]).resize((3000, 4000), Image.Resampling.BICUBIC))
+    large = photos[0].resize((3000, 4000), Image.Resampling.BICUBIC)
     print(f"the same at 3000 x 4000: {milliseconds(lambda: framed(large)):.1f} ms")
-    empty = np.full((4000, 3000, 3), 128, dtype=np.uint8)
+    empty = Image.new("RGB", (3000, 4000), (128, 128, 128))
     print(f"3000 x 4000 without a face (every level): {milliseconds(lambda: framed(empty)):.1f} ms")
 
 

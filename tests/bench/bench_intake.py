@@ -56,7 +56,7 @@ def rate(work: Callable[[Any], object], items: Sequence[Any]) -> float:
     return len(items) / (time.perf_counter() - start)
 
 
-def inputs(photos: Sequence[Pixels]) -> tuple[list[Any], list[Pixels]]:
+def inputs(photos: Sequence[Image.Image]) -> tuple[list[Any], list[Pixels]]:
     """The detector's and the embedder's inputs, as intake makes them."""
     levels: list[Any] = []
     crops: list[Pixels] = []
@@ -76,7 +76,7 @@ def inputs(photos: Sequence[Pixels]) -> tuple[list[Any], list[Pixels]]:
 
 def bare(files: list[bytes], repeats: int, ready: Any, seconds: Any) -> None:
     """One process of the reference: the sessions alone, everything prepared before the clock starts."""
-    levels, crops = inputs([np.asarray(decode(data)) for data in files])
+    levels, crops = inputs([decode(data) for data in files])
     card = load_card()
     detector = open_session(building.detector_path(), threads=1)
     embedder = open_session(building.embedder_path(), threads=1)
@@ -131,8 +131,8 @@ def hashed(grey: Image.Image) -> tuple[int, int, int]:
 def main() -> None:
     building.prepare()
     files = readable()
-    photos = [np.asarray(decode(data)) for data in files[:_SAMPLE]]
-    greys = [Image.fromarray(photo).convert("L") for photo in photos]
+    photos = [decode(data) for data in files[:_SAMPLE]]
+    greys = [photo.convert("L") for photo in photos]
     finder, embedder = FaceFinder(), Embedder(load_card())
     _, crops = inputs(photos)
     print(f"{len(files)} portraits of 240 x 300; photos a second, one thread")
@@ -140,7 +140,7 @@ def main() -> None:
     print(f"  Pillow's own decode {rate(lambda data: Image.open(io.BytesIO(data)).load(), files[:_SAMPLE]):8.0f}")
     print(f"  hashes     {rate(hashed, greys):8.0f}")
 
-    def framed(photo: Pixels) -> None:
+    def framed(photo: Image.Image) -> None:
         found = finder.find(photo)
         if found:
             aligned_crop(photo, found[0].landmarks)

@@ -53,12 +53,12 @@ def main() -> None:
     clean = clean_part(plan)
     for path in clean:
         with Image.open(io.BytesIO(files[path])) as opened:
-            rgb = np.asarray(opened.convert("RGB"))
-        faces = finder.find(rgb)
+            photo = opened.convert("RGB")
+        faces = finder.find(photo)
         if not faces:
             lost.append(path)
             continue
-        crops.append(aligned_crop(rgb, faces[0].landmarks))
+        crops.append(aligned_crop(photo, faces[0].landmarks))
         shown.append(plan.sheet.true_person[path])
     print(f"faces found: {1 - len(lost) / len(clean):.2%} (reference 99 %); not in {lost}")
     embeddings = embedder.embed(np.stack(crops)).astype(np.float64)

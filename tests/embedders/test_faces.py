@@ -55,12 +55,16 @@ def _slow_predict(forests: Forests, rgb: Pixels, box: tuple[float, float, float,
 
 def test_landmarks_against_the_slow_way(portrait: Pixels) -> None:
     forests = building.forests()
-    for box in [(27.0, 50.0, 83.0, 106.0), (-20.0, -10.0, 60.0, 70.0)]:
-        np.testing.assert_allclose(predict(forests, portrait, box), _slow_predict(forests, portrait, box), atol=1e-2)
+    boxes = [(27.0, 50.0, 83.0, 106.0), (-20.0, -10.0, 60.0, 70.0)]
+    together = predict(forests, [portrait, portrait], boxes)
+    for box, points in zip(boxes, together, strict=True):
+        np.testing.assert_array_equal(predict(forests, [portrait], [box])[0], points)
+        np.testing.assert_allclose(points, _slow_predict(forests, portrait, box), atol=1e-2)
+    assert predict(forests, [], []).shape == (0, 5, 2)
 
 
 def test_a_portrait_has_one_face_and_its_eyes_are_level(portrait: Pixels, finder: FaceFinder) -> None:
-    (face,) = finder.find(portrait)
+    (face,) = finder.find(Image.fromarray(portrait))
     assert face.score > 0.5
     left, top, width, height = face.box
     assert ((face.landmarks > [left, top]) & (face.landmarks < [left + width, top + height])).all()
@@ -71,20 +75,20 @@ def test_a_portrait_has_one_face_and_its_eyes_are_level(portrait: Pixels, finder
 
 @pytest.mark.parametrize("size", [(96, 120), (240, 300), (900, 1125), (2400, 3000)])
 def test_a_face_is_found_at_any_size_of_photo(portrait: Pixels, finder: FaceFinder, size: tuple[int, int]) -> None:
-    (small,) = finder.find(portrait)
+    (small,) = finder.find(Image.fromarray(portrait))
     resized = np.asarray(Image.fromarray(portrait).resize(size, Image.Resampling.LANCZOS))
-    (face,) = finder.find(resized)
+    (face,) = finder.find(Image.fromarray(resized))
     zoom = size[0] / portrait.shape[1]
     assert np.abs(face.landmarks / zoom - small.landmarks).max() < 0.1 * small.box[2]
 
 
 def test_companions_are_all_found(portrait: Pixels, finder: FaceFinder) -> None:
-    assert len(finder.find(np.concatenate([portrait, portrait], axis=1))) == 2
+    assert len(finder.find(Image.fromarray(np.concatenate([portrait, portrait], axis=1)))) == 2
 
 
 @pytest.mark.parametrize("shape", [(1, 1, 3), (3, 500, 3), (40, 40, 3), (300, 300, 3)])
 def test_nothing_is_found_where_nothing_is(finder: FaceFinder, shape: tuple[int, int, int]) -> None:
-    assert finder.find(np.full(shape, 128, dtype=np.uint8)) == []
+    assert finder.find(Image.fromarray(np.full(shape, 128, dtype=np.uint8))) == []
 
 
 @given(st.integers(1, 6000), st.integers(1, 6000))
@@ -120,7 +124,7 @@ def test_the_crop_samples_where_the_transform_says() -> None:
     rows, columns = np.mgrid[0:300, 0:400]
     ramp = np.rint(np.stack([rows * 0.8, columns * 0.6, rows * 0], axis=2)).astype(np.uint8)
     landmarks = np.array([(230.0, 100.0), (200.0, 102.0), (120.0, 100.0), (150.0, 102.0), (175.0, 160.0)])
-    crop, transform = aligned_crop(ramp, landmarks), crop_transform(landmarks)
+    crop, transform = aligned_crop(Image.fromarray(ramp), landmarks), crop_transform(landmarks)
     places = np.stack([*np.mgrid[0:150, 0:150][::-1], np.ones((150, 150))], axis=2) @ transform.T
     assert places.min() > 3
     inside = (places[..., 0] < 396) & (places[..., 1] < 296)
@@ -132,16 +136,16 @@ def test_the_crop_samples_where_the_transform_says() -> None:
 
 
 def test_a_crop_of_a_large_photo_equals_that_of_the_small_one(portrait: Pixels, finder: FaceFinder) -> None:
-    (face,) = finder.find(portrait)
+    (face,) = finder.find(Image.fromarray(portrait))
     large = np.asarray(Image.fromarray(portrait).resize((960, 1200), Image.Resampling.BICUBIC))
-    small_crop = aligned_crop(portrait, face.landmarks).astype(int)
-    large_crop = aligned_crop(large, (face.landmarks + 0.5) * 8 - 0.5).astype(int)
+    small_crop = aligned_crop(Image.fromarray(portrait), face.landmarks).astype(int)
+    large_crop = aligned_crop(Image.fromarray(large), (face.landmarks + 0.5) * 8 - 0.5).astype(int)
     assert np.abs(small_crop - large_crop).mean() < 3
 
 
 def test_a_crop_wholly_outside_is_black() -> None:
     landmarks = np.array([(1030.0, 0.0), (1020.0, 1.0), (1000.0, 0.0), (1010.0, 1.0), (1015.0, 20.0)])
-    assert not aligned_crop(np.full((50, 50, 3), 200, dtype=np.uint8), landmarks).any()
+    assert not aligned_crop(Image.new("RGB", (50, 50), (200, 200, 200)), landmarks).any()
 
 
 def test_eye_distance() -> None:

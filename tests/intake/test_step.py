@@ -8,7 +8,6 @@ import subprocess
 import sys
 import time
 from collections.abc import Callable
-from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -233,13 +232,24 @@ def test_a_photo_that_changes_while_it_is_read_is_read_again(
 
 
 def test_a_photo_beyond_memory_is_named(photo_root: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    def refusing(*_: object) -> None:
-        raise MemoryError
+    path = photo_root / "p0" / "0.png"
+    digest = hashlib.sha256(path.read_bytes()).hexdigest()
+    read = chunks.read_photos
 
-    monkeypatch.setattr(chunks, "read_photo", refusing)
-    file = PhotoFile(b"p0/0.png", "p0/0.png", "p0", 1, 1)
-    task = Task(os.fsencode(photo_root), (file,), Settings("whole", 150, 10_000), load_card())
-    assert chunks.read_chunk(task).files == (replace(file, why="it does not fit into memory"),)
+    def refusing(photos: list[chunks.Decoded], *rest: Any) -> Any:
+        if any(photo.digest == digest for photo in photos):
+            raise MemoryError
+        return read(photos, *rest)
+
+    monkeypatch.setattr(chunks, "read_photos", refusing)
+    files = tuple(PhotoFile(f"p0/{n}.png".encode(), f"p0/{n}.png", "p0", 1, 1) for n in (0, 5))
+    task = Task(os.fsencode(photo_root), files, Settings("whole", 150, 10_000), load_card())
+    result = chunks.read_chunk(task)
+    assert result.files[0].why == "it does not fit into memory"
+    assert result.files[0].digest is None
+    # Its companions are read all the same.
+    assert [reading.digest for reading in result.readings] == [result.files[1].digest]
+    assert result.readings[0].embedding is not None
 
 
 @pytest.mark.parametrize(

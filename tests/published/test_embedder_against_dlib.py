@@ -37,7 +37,7 @@ def test_the_embedding_is_dlibs() -> None:
 @pytest.mark.parametrize("known", _RECORDED["landmarks"], ids=lambda known: str(known["box"]))
 def test_the_landmarks_are_dlibs_to_the_pixel(known: dict[str, list[int]]) -> None:
     left, top, right, bottom = known["box"]
-    got = predict(building.forests(), _picture("portrait.png"), (left, top, right, bottom))
+    got = predict(building.forests(), [_picture("portrait.png")], [(left, top, right, bottom)])[0]
     # Rounded as dlib rounds; the distance from the rounding edge is kept so that 1e-3 either way is agreement.
     np.testing.assert_allclose(got, known["landmarks"], atol=0.5 + 1e-3)
 
@@ -47,7 +47,7 @@ def test_the_aligned_crop_lies_where_dlibs_does() -> None:
     portrait, chip = _picture("portrait.png"), _picture("portrait_chip.png").astype(np.int64)
 
     def difference(shift: tuple[float, float]) -> float:
-        return float(np.abs(aligned_crop(portrait, landmarks + shift) - chip).mean())
+        return float(np.abs(aligned_crop(Image.fromarray(portrait), landmarks + shift) - chip).mean())
 
     # Rounding differs, so grey values do a little; a fifth of a pixel off would differ more.
     here = difference((0.0, 0.0))
@@ -60,7 +60,7 @@ def test_the_face_is_found_where_dlib_finds_it() -> None:
     enlarged = np.asarray(
         Image.fromarray(_picture("portrait.png")).resize(known["enlarged_to"], Image.Resampling.BICUBIC)
     )
-    (box, score), *others = FaceFinder().boxes(enlarged)
+    (box, score), *others = FaceFinder().boxes(Image.fromarray(enlarged))
     left, top, right, bottom = known["box"]
     common = max(0.0, min(box[0] + box[2], right) - max(box[0], left)) * max(
         0.0, min(box[1] + box[3], bottom) - max(box[1], top)
