@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import hashlib
 import multiprocessing
+import os
 import signal
 import sys
 from collections import deque
@@ -11,6 +13,7 @@ from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wai
 from concurrent.futures.process import BrokenProcessPool
 from contextlib import contextmanager
 from dataclasses import replace
+from pathlib import Path
 from typing import Any
 
 from curator.domain import PhotoFile, Reading
@@ -106,8 +109,22 @@ def _one_by_one(task: Task, read: ReadChunk) -> tuple[Result, tuple[str, ...]]:
             pool.shutdown(wait=False)
             pool = Processes(1)
             died.append(file.name)
-            result = Result((replace(file, digest=None, why=DIED),), ())
+            result = _given_up(task, file)
         files.extend(result.files)
-        readings.update({reading.digest: reading for reading in result.readings})
+        for reading in result.readings:
+            if reading.why != DIED or reading.digest not in readings:
+                readings[reading.digest] = reading
     pool.shutdown()
     return Result(tuple(files), tuple(readings.values())), tuple(died)
+
+
+def _given_up(task: Task, file: PhotoFile) -> Result:
+    """A photo that ended its process, known by its bytes: it is not tried again until they change."""
+    try:
+        with Path(os.fsdecode(task.root + b"/" + file.raw)).open("rb") as opened:
+            status = os.fstat(opened.fileno())
+            digest = hashlib.file_digest(opened, "sha256").hexdigest()
+    except OSError:
+        return Result((replace(file, digest=None, why=DIED),), ())
+    read = replace(file, size=status.st_size, mtime_ns=status.st_mtime_ns, digest=digest, why=None)
+    return Result((read,), (Reading(digest=digest, why=DIED),))

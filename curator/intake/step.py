@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 import time
-from collections.abc import Mapping, Sequence, Set
+from collections.abc import Iterable, Mapping, Sequence, Set
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -22,6 +22,7 @@ from curator.intake.decoding import DEFAULT_PIXEL_LIMIT, within_limit
 from curator.intake.reading import VERSION, Settings
 from curator.intake.walking import SIDECAR, Walk, walk
 from curator.ledger import Ledger
+from curator.ledger.derived import NOT_READ_YET
 from curator.progress import Progress
 
 
@@ -75,7 +76,9 @@ def run(
         # Before anything is removed, so that a mistake in the CSV changes nothing.
         told = _attributes(photos, attributes, found.files, progress)
         ledger.set_maker(maker, framing=framed, card=card or ledger.card or chosen.name)
-        recorded, before = ledger.files(), ledger.digests_read(maker) - _refused_before(ledger, pixel_limit)
+        # What an earlier, lower pixel limit refused counts as unread.
+        allowed = {digest for digest, why in ledger.refusals(maker).items() if within_limit(why, pixel_limit)}
+        recorded, before = ledger.files(), ledger.digests_read(maker) - allowed
         fresh, removed, renamed = _sort_out(recorded, before, found)
         # A name may have passed from one file to another: those that lose theirs go first.
         ledger.remove_files([*removed, *renamed])
@@ -84,15 +87,14 @@ def run(
         settings = Settings(framing=framed, size=chosen.size, pixel_limit=pixel_limit)
         tasks = _tasks(photos, fresh, settings, chosen, recorded, before, workers)
         _read(ledger, tasks, maker, workers, progress, read)
-    roll = ledger.roll()
-    why = ledger.readings(roll).why
+    files = ledger.files().values()
     return IntakeReport(
-        photos=len(roll),
-        identities=len(roll.identities),
+        photos=len(files),
+        identities=len({file.identity for file in files}),
         read=len(fresh),
-        unchanged=len(roll) - len(fresh),
+        unchanged=len(files) - len(fresh),
         removed=len(removed),
-        unreadable=tuple((photo, reason) for photo, reason in zip(roll.photos, why, strict=True) if reason),
+        unreadable=_unreadable(ledger, files, maker),
         seconds=time.monotonic() - started,
         skipped=dict(sorted(found.skipped.items())),
     )
@@ -115,13 +117,6 @@ def _attributes(
     if attributes.unknown:
         progress.note(f"{attributes.unknown} rows of {path} name nothing on the roll.")
     return attributes.rows
-
-
-def _refused_before(ledger: Ledger, pixel_limit: int) -> set[str]:
-    """Digests of photos that an earlier, lower pixel limit refused."""
-    roll = ledger.roll()
-    reasons = ledger.readings(roll).why
-    return {digest for digest, why in zip(roll.digests, reasons, strict=True) if why and within_limit(why, pixel_limit)}
 
 
 def _sort_out(
@@ -172,12 +167,24 @@ def _read(
 ) -> None:
     progress.begin("reading photos", sum(len(task.files) for task in tasks))
     for result, died in pool.run(tasks, read, workers=workers, stop_wanted=progress.stop_wanted):
-        ledger.put_chunk(result.files, result.readings, maker=maker)
+        # Another file of the same bytes may have been read: then the process ended by chance.
+        known = ledger.readings_of([reading.digest for reading in result.readings]) if died else {}
+        readings = [r for r in result.readings if r.why != pool.DIED or r.digest not in known]
+        ledger.put_chunk(result.files, readings, maker=maker)
         for name in died:
             progress.note(f"{name}: {pool.DIED}.")
         progress.advance(len(result.files))
     if progress.stop_wanted():
         raise Stopped()
+
+
+def _unreadable(ledger: Ledger, files: Iterable[PhotoFile], maker: str) -> tuple[tuple[str, str], ...]:
+    """What `Ledger.readings` says of photos without a usable reading, by name, and without loading the others."""
+    read, refused = ledger.digests_read(maker), ledger.refusals(maker)
+    reasons = {
+        file.name: refused.get(file.digest) if file.digest in read else file.why or NOT_READ_YET for file in files
+    }
+    return tuple(sorted((name, why) for name, why in reasons.items() if why))
 
 
 @dataclass(frozen=True)

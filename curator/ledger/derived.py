@@ -24,6 +24,10 @@ def digests_read(derived: Database, maker: str) -> set[str]:
     return {row[0] for row in derived.rows("SELECT digest FROM reading WHERE maker = ?", (maker,))}
 
 
+def refusals(derived: Database, maker: str) -> dict[str, str]:
+    return dict(derived.rows("SELECT digest, why FROM reading WHERE maker = ? AND why IS NOT NULL", (maker,)))
+
+
 def put_readings(derived: Database, readings: Sequence[Reading], maker: str) -> None:
     with derived.transaction():
         derived.execute_many(

@@ -166,6 +166,10 @@ class Ledger:
         """Digests of which `maker` has made a reading."""
         return _derived.digests_read(self._derived, maker)
 
+    def refusals(self, maker: str) -> dict[str, str]:
+        """Digest to why, of the bytes that `maker` could not read; quick however many it could."""
+        return _derived.refusals(self._derived, maker)
+
     def put_chunk(self, files: Sequence[PhotoFile], readings: Sequence[Reading], *, maker: str) -> None:
         """Take in a chunk. Readings go first: a kill in between leaves a reading to be found, never a photo without."""
         record = self._writable()

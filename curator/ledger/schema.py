@@ -88,4 +88,6 @@ DERIVED = (
         """CREATE TABLE array (
             kind TEXT PRIMARY KEY, key TEXT NOT NULL, dtype TEXT NOT NULL, shape TEXT NOT NULL, data BLOB NOT NULL)""",
     ),
+    # Each intake asks for these, and must not wade through the readings to find them.
+    ("CREATE INDEX reading_refused ON reading (maker, digest, why) WHERE why IS NOT NULL",),
 )
