@@ -21,8 +21,7 @@ from curator.intake.chunks import CHUNK, Task, read_chunk
 from curator.intake.decoding import DEFAULT_PIXEL_LIMIT, within_limit
 from curator.intake.reading import VERSION, Settings
 from curator.intake.walking import SIDECAR, Walk, walk
-from curator.ledger import Ledger
-from curator.ledger.derived import NOT_READ_YET
+from curator.ledger import NOT_READ_YET, Ledger
 from curator.progress import Progress
 
 

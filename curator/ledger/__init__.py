@@ -4,7 +4,8 @@
 (may be deleted at any time: the next intake makes it again).
 """
 
+from curator.ledger.derived import NOT_READ_YET
 from curator.ledger.ledger import Ledger
 from curator.ledger.record import EditionRow
 
-__all__ = ["EditionRow", "Ledger"]
+__all__ = ["NOT_READ_YET", "EditionRow", "Ledger"]

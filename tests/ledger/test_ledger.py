@@ -54,6 +54,8 @@ def test_photos_and_readings_come_back_along_the_roll(
     assert ledger.thumbnails(["a" * 64, "e" * 64]) == {"a" * 64: b"jpeg"}
     assert ledger.digests_read("m1") == {"a" * 64, "b" * 64, "e" * 64}
     assert ledger.digests_read("m2") == set()
+    assert ledger.refusals("m1") == {"e" * 64: "empty file"}
+    assert ledger.refusals("m2") == {}
 
 
 def test_another_maker_has_read_nothing(
