@@ -106,31 +106,30 @@ def predict(forests: Forests, photos: Sequence[Pixels], boxes: Sequence[Box]) ->
     span = (edges[:, 1] - edges[:, 0])[:, :, None]
     # Half a pixel more, so that to cut off the fraction is to round.
     corner = edges[:, 0, :, None] + 0.5
-    views = [_View(photo) for photo in photos]
+    view = _View(photos)
     # Single precision, and leaves added in the order of the trees: as where the forests were trained, so that a
     # pixel on the edge of rounding falls to the same side.
-    n, (n_rounds, n_trees) = len(views), forests.first.shape[:2]
+    n, (n_rounds, n_trees) = len(photos), forests.first.shape[:2]
     shape = np.repeat(forests.initial.astype(np.float32)[None], n, axis=0)
     weights = _turning_weights(forests.initial)
-    first_leaves = np.arange(n_trees) * _LEAVES
+    first_leaves = (np.arange(n_trees) * _LEAVES)[:, None]
     answers = np.zeros((n, n_trees, _SPLITS + 1), dtype=bool)
     for r in range(n_rounds):
         turn = (shape[..., 0] + 1j * shape[..., 1].astype(np.float64)) @ weights
         rotation = np.array([[turn.real, -turn.imag], [turn.imag, turn.real]], dtype=np.float32).transpose(2, 0, 1)
-        places = (rotation @ forests.offsets[r] + shape.transpose(0, 2, 1).take(forests.anchors[r], axis=2)).astype(
-            np.float64
-        )
+        anchored = shape.transpose(0, 2, 1).take(forests.anchors[r], axis=2)
+        places = (rotation @ forests.offsets[r] + anchored).astype(np.float64)
         places *= span
         places += corner
-        looked = np.floor(places, out=places).astype(np.intp)
-        grey = np.stack([view.grey(at) for view, at in zip(views, looked, strict=True)])
+        # Faces last: what is fetched for one split of one tree is then one stretch of memory for all faces.
+        grey = np.ascontiguousarray(view.grey(np.floor(places, out=places).astype(np.intp)).T)
         # Every split of every tree is answered, though a path asks four of fifteen: that is fewer steps for numpy
         # than following the paths. The answers of a tree are then one number, which tells its leaf.
-        differences = grey.take(forests.first[r], axis=1) - grey.take(forests.second[r], axis=1)
-        answers[..., :_SPLITS] = differences <= forests.thresholds[r]
-        leaf = _LEAF_OF_ANSWERS.take(np.packbits(answers).view(">u2").reshape(n, n_trees))
+        differences = grey.take(forests.first[r], axis=0) - grey.take(forests.second[r], axis=0)
+        answers[..., :_SPLITS] = (differences <= forests.thresholds[r][..., None]).transpose(2, 0, 1)
+        leaf = _LEAF_OF_ANSWERS.take(np.packbits(answers).view(">u2").reshape(n, n_trees).T)
         leaves = forests.leaves[r].reshape(n_trees * _LEAVES, -1).take(first_leaves + leaf, axis=0)
-        shape = np.add.reduce(np.concatenate([shape.reshape(n, 1, -1), leaves], axis=1), axis=1).reshape(shape.shape)
+        shape = np.add.reduce(np.concatenate([shape.reshape(1, n, -1), leaves]), axis=0).reshape(shape.shape)
     return shape.astype(np.float64) * span.transpose(0, 2, 1) + edges[:, :1]
 
 
@@ -142,24 +141,24 @@ def _turning_weights(source: NDArray[np.float64]) -> NDArray[np.complex128]:
 
 
 class _View:
-    """A photo as the regressor sees it."""
+    """Photos as the regressor sees them, in one stretch of memory so that all are looked at in one go."""
 
-    def __init__(self, photo: Pixels) -> None:
-        self._height, self._width = photo.shape[:2]
-        self._pixels = photo.reshape(-1)
+    def __init__(self, photos: Sequence[Pixels]) -> None:
+        distinct = {id(photo): photo for photo in photos}
+        starts = np.cumsum([0, *(photo.size for photo in distinct.values())])
+        start_of = dict(zip(distinct, starts.tolist(), strict=False))
+        flat = [photo.reshape(-1) for photo in distinct.values()]
+        self._pixels = flat[0] if len(flat) == 1 else np.concatenate(flat)
+        self._start = np.array([start_of[id(photo)] for photo in photos], dtype=np.intp)[:, None]
+        self._height, self._width = np.array([photo.shape[:2] for photo in photos], dtype=np.intp).T[:, :, None]
 
     def grey(self, places: NDArray[np.intp]) -> NDArray[np.int16]:
-        """The integer mean of the three channels at `places` (2, p), x and y; 0 outside the photo."""
-        x, y = places
-        # Unsigned, so that what is left of or above the photo is far beyond its other edge.
-        inside = (x.view(np.uintp) < self._width) & (y.view(np.uintp) < self._height)
-        at = (y * self._width + x) * 3
-        whole = bool(inside.all())
-        if not whole:
-            at = np.where(inside, at, 0)
+        """The integer mean of the three channels at `places` (n, 2, p), x and y: (n, p); 0 outside the photo."""
+        x, y = places[:, 0], places[:, 1]
+        inside = (x >= 0) & (x < self._width) & (y >= 0) & (y < self._height)
+        at = np.where(inside, (y * self._width + x) * 3 + self._start, 0)
         grey = self._pixels.take(at).astype(np.uint16)
         grey += self._pixels[1:].take(at)
         grey += self._pixels[2:].take(at)
         grey //= 3
-        values = grey.view(np.int16)
-        return values if whole else np.where(inside, values, np.int16(0))
+        return np.where(inside, grey.view(np.int16), np.int16(0))
