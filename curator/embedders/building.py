@@ -17,7 +17,7 @@ from pathlib import Path
 import numpy as np
 import platformdirs
 
-from curator.embedders import landmarks, networks
+from curator.embedders import landmarks
 from curator.embedders.containers import tensors
 from curator.errors import EnvironmentFailed
 
@@ -44,12 +44,12 @@ def cache_folder() -> Path:
 
 def embedder_path() -> Path:
     """The default embedder as an ONNX file, built where it is missing. Raises `EnvironmentFailed`."""
-    return _built("embedder", ".onnx", _EMBEDDER_FILE, lambda data: _serialized(networks.embedder(tensors(data))))
+    return _built("embedder", ".onnx", _EMBEDDER_FILE, _embedder)
 
 
 def detector_path() -> Path:
     """The face detector as an ONNX file, built where it is missing. Raises `EnvironmentFailed`."""
-    return _built("detector", ".onnx", _DETECTOR_FILE, lambda data: _serialized(networks.detector(tensors(data))))
+    return _built("detector", ".onnx", _DETECTOR_FILE, _detector)
 
 
 def forests() -> landmarks.Forests:
@@ -138,9 +138,17 @@ def _write(path: Path, data: bytes) -> None:
         raise EnvironmentFailed(f"The models could not be written to {path.parent}: {error.strerror}.") from error
 
 
-def _serialized(model: object) -> bytes:
-    data: bytes = model.SerializeToString()  # type: ignore[attr-defined]
-    return data
+def _embedder(data: bytes) -> bytes:
+    # Where the models are built already, as in every reading process, the library that writes them is not loaded.
+    from curator.embedders import networks
+
+    return bytes(networks.embedder(tensors(data)).SerializeToString())
+
+
+def _detector(data: bytes) -> bytes:
+    from curator.embedders import networks
+
+    return bytes(networks.detector(tensors(data)).SerializeToString())
 
 
 def _packed(forests: landmarks.Forests) -> bytes:

@@ -82,7 +82,8 @@ class FaceFinder:
         sizes = level_sizes(photo.width, photo.height)
         for size in (*sizes[_PORTRAIT_LEVEL::-1], *sizes[_PORTRAIT_LEVEL + 1 :]):
             if level is None or level.size != size:
-                level = at_level(photo, size)
+                # A smaller level is made from the last one, which is nearer to it than the photo.
+                level = at_level(photo if level is None or level.width < size[0] else level, size)
             found += self._scan(np.asarray(level), photo.width / size[0], photo.height / size[1])
             if any(score >= _CONVINCING for _, score in found):
                 break
