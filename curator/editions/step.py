@@ -63,6 +63,10 @@ def write_edition(ledger: Ledger, recipe: Recipe, recipe_text: str, out: Path, *
     """
     out = out.absolute()
     check_target(out)
+    try:
+        str(out).encode()
+    except UnicodeEncodeError as error:
+        raise BadInput(f"{out!r} is no UTF-8 text; name a folder that the ledger can note.") from error
     if out.resolve().is_relative_to(ledger.photo_root):
         raise BadInput(f"{out} lies inside the photo root {ledger.photo_root}, which is never written to.")
     with ledger.writing():

@@ -17,7 +17,7 @@ from curator.embedders.faces import FaceFinder
 from curator.embedders.session import Embedder
 from curator.intake.reading import Decoded, Settings, decode_photo, read_photos
 
-CHUNK = 16
+CHUNK = 32
 """Photos a chunk: a kill or a stop costs a second or two of work, and the embedder's batches are full."""
 _BEYOND_MEMORY = "it does not fit into memory"
 _TOGETHER = 6_000_000

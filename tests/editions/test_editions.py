@@ -1,6 +1,7 @@
 """Editions: what was asked is written, twice the same, and what people said is obeyed."""
 
 import json
+import os
 import stat
 from collections import Counter
 from collections.abc import Callable
@@ -187,3 +188,14 @@ def test_a_session_that_ties_nearly_all_is_named_as_what_spoils_the_shares(
     assert "split train: 85% of identities and 85% of photos, not 60%" in report.shortfalls
     assert any("17 of 20 identities are tied to one another" in told for told in report.shortfalls)
     assert any("the same club north (16 of 16 ties)" in told for told in report.shortfalls)
+
+
+def test_a_folder_that_is_no_text_is_refused_before_anything_is_written(
+    made_ledger: MadeLedger, recipe_text: str, tmp_path: Path
+) -> None:
+    out = tmp_path / os.fsdecode(b"e-\xff")
+    with made_ledger() as ledger:
+        with pytest.raises(BadInput, match="no UTF-8 text"):
+            _written(ledger, recipe_text, out)
+        assert ledger.editions() == []
+    assert not out.exists()

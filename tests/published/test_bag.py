@@ -15,7 +15,7 @@ from curator.editions.lists import csv_bytes, parquet_bytes
 
 @pytest.fixture
 def bag(tmp_path: Path) -> Path:
-    write_bag(tmp_path / "bag", {"a.txt": b"abc", "deep/b.txt": b""}, {"Bagging-Date": "2026-01-01"})
+    write_bag(tmp_path / "bag", {"a.txt": b"abc", "deep/b.txt": b""}, {"Bagging-Date": "2026-01-01"}, went=lambda _: None)
     return tmp_path / "bag"
 
 
@@ -32,7 +32,7 @@ def test_sha256sum_checks_it(bag: Path) -> None:
 
 
 def test_payload_oxum_of_abc(tmp_path: Path) -> None:
-    write_bag(tmp_path / "bag", {"a.txt": b"abc"}, {})
+    write_bag(tmp_path / "bag", {"a.txt": b"abc"}, {}, went=lambda _: None)
     assert "Payload-Oxum: 3.1\n" in (tmp_path / "bag" / "bag-info.txt").read_text()
 
 
