@@ -15,7 +15,9 @@ from curator.editions.lists import csv_bytes, parquet_bytes
 
 @pytest.fixture
 def bag(tmp_path: Path) -> Path:
-    write_bag(tmp_path / "bag", {"a.txt": b"abc", "deep/b.txt": b""}, {"Bagging-Date": "2026-01-01"}, went=lambda _: None)
+    write_bag(
+        tmp_path / "bag", {"a.txt": b"abc", "deep/b.txt": b""}, {"Bagging-Date": "2026-01-01"}, went=lambda _: None
+    )
     return tmp_path / "bag"
 
 
