@@ -36,7 +36,7 @@ def demo(options: Namespace) -> int:
 
 def desk(options: Namespace) -> int:
     try:
-        from curator.desktop.window import open_desk
+        from curator.desktop.app import open_desk
     except ImportError as error:
         hint = f" On Debian and its kin: {_APT}" if sys.platform == "linux" else ""
         raise EnvironmentFailed(f"The window cannot open, for Qt lacks a system library ({error}).{hint}") from error

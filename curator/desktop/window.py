@@ -1,144 +1,176 @@
-"""The window: six places on the left, the chosen one's table on the right, one line of advice above it."""
+"""The window: six places in the order of the work, one line of advice, one strip for work and undo."""
 
 from __future__ import annotations
 
-import sys
+from collections.abc import Sequence
+from functools import partial
 from pathlib import Path
 
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QCloseEvent, QKeySequence, QShortcut
-from PySide6.QtWidgets import (
-    QApplication,
-    QFileDialog,
-    QHBoxLayout,
-    QLabel,
-    QListWidget,
-    QMainWindow,
-    QPushButton,
-    QTableView,
-    QVBoxLayout,
-    QWidget,
-)
+from PySide6.QtWidgets import QApplication, QLabel, QMainWindow, QStackedWidget, QVBoxLayout, QWidget
 
-from curator.desktop.looking import Looking
-from curator.desktop.places import PLACES, Shown
-from curator.desktop.rows import Rows
+from curator.desktop import theme
+from curator.desktop.desk import Desk
+from curator.desktop.header import Header
+from curator.desktop.keys import KeySheet
+from curator.desktop.memory import Memory
+from curator.desktop.page import Command, Page
+from curator.desktop.places.doubts import DoubtsPage
+from curator.desktop.places.echoes import EchoesPage
+from curator.desktop.places.editions import EditionsPage
+from curator.desktop.places.pairs import PairsPage
+from curator.desktop.places.roll import RollPage
+from curator.desktop.places.splits import SplitsPage
+from curator.desktop.places.start import StartPage
+from curator.desktop.strip import Strip
 
-_START = "Open a ledger to begin. 'pairwright intake PHOTOS --ledger L' makes one; 'pairwright demo' makes one to try."
-_PLACES_WIDTH = 150
+_SMALLEST = (860, 560)
 
 
 class Window(QMainWindow):
-    """The desk over one ledger."""
+    """The desk and its places."""
 
-    def __init__(self, ledger: Path | None) -> None:
+    def __init__(self, ledger: Path | None = None) -> None:
         super().__init__()
         self.setWindowTitle("Pairwright")
-        self.resize(1000, 650)
-        self._ledger = ledger
-        self._looking: Looking | None = None
-        self._rows = Rows()
-        self.places = QListWidget()
-        self.places.addItems(list(PLACES))
-        self.places.setFixedWidth(_PLACES_WIDTH)
-        self.places.setAccessibleName("Places")
-        self.advice = QLabel(_START)
+        self.setMinimumSize(*_SMALLEST)
+        self.resize(1200, 800)
+        self.desk = Desk(Memory())
+        self.start = StartPage(self.desk)
+        self.pages: list[Page] = [
+            page(self.desk) for page in (RollPage, EchoesPage, DoubtsPage, PairsPage, SplitsPage, EditionsPage)
+        ]
+        self.header = Header(self.desk, self.pages)
+        self.advice = QLabel()
+        self.advice.setFont(theme.serif(1.1, italic=True))
         self.advice.setWordWrap(True)
-        self.table = QTableView()
-        self.table.setModel(self._rows)
-        self.table.setAccessibleName("What the place shows")
-        self.table.setShowGrid(False)
-        self.table.setAlternatingRowColors(True)
-        self.table.setTabKeyNavigation(False)
-        self.table.verticalHeader().hide()
-        self.table.horizontalHeader().setStretchLastSection(True)
-        self.table.horizontalHeader().setDefaultAlignment(Qt.AlignmentFlag.AlignLeft)
-        self.open_button = QPushButton("Open a ledger …")
-        self.open_button.setToolTip("Open a ledger (Ctrl+O)")
-        self.open_button.clicked.connect(self._choose)
+        self.advice.setContentsMargins(20, 8, 20, 4)
+        self.advice.setAccessibleName("The next useful thing to do")
+        self.stack = QStackedWidget()
+        for page in (self.start, *self.pages):
+            self.stack.addWidget(page)
+        self.strip = Strip(self.desk)
+        self._advice: dict[Page, str] = {}
+        self._asked_to_close = False
         self._lay_out()
-        self.places.currentTextChanged.connect(self.go)
-        QShortcut(QKeySequence.StandardKey.Open, self, self._choose)
-        for number, name in enumerate(PLACES):
-            self.places.item(number).setToolTip(f"{name} (Ctrl+{number + 1})")
-            shortcut = QShortcut(QKeySequence(f"Ctrl+{number + 1}"), self)
-            shortcut.activated.connect(lambda number=number: self.places.setCurrentRow(number))
-        if ledger is not None:
-            self.places.setCurrentRow(0)
+        self._connect()
+        self._restore()
+        self.repaint_all()
+        if ledger is None or not self.desk.open(ledger):
+            self.show_page(self.start)
 
     def _lay_out(self) -> None:
-        side = QVBoxLayout()
-        side.addWidget(self.places)
-        side.addWidget(self.open_button)
-        page = QVBoxLayout()
-        page.addWidget(self.advice)
-        page.addWidget(self.table)
         whole = QWidget()
-        row = QHBoxLayout(whole)
-        row.addLayout(side)
-        row.addLayout(page, 1)
+        column = QVBoxLayout(whole)
+        column.setContentsMargins(0, 0, 0, 0)
+        column.setSpacing(0)
+        column.addWidget(self.header)
+        column.addWidget(self.advice)
+        column.addWidget(self.stack, 1)
+        column.addWidget(self.strip)
         self.setCentralWidget(whole)
 
-    def open_ledger(self, ledger: Path) -> None:
-        """Show another ledger."""
-        self._ledger = ledger
-        self.places.setCurrentRow(-1)
-        self.places.setCurrentRow(0)
+    def _connect(self) -> None:
+        self.commands = [
+            Command("Take back what was said last", ("Ctrl+Z",), self.desk.undo),
+            Command("Restore what was taken back", ("Ctrl+Shift+Z", "Ctrl+Y"), self.desk.redo),
+            Command("Open or begin a ledger", ("Ctrl+O",), lambda: self.show_page(self.start)),
+            Command("Show the keys", ("F1",), self.show_keys),
+            Command("Stop the work under way", ("Ctrl+.",), self.desk.work.stop),
+            Command("Close the window", ("Ctrl+Q",), self.close_window),
+        ]
+        for number, page in enumerate(self.pages, 1):
+            self.commands.append(Command(f"Go to {page.name}", (f"Ctrl+{number}",), partial(self.go, page)))
+            page.counted.connect(lambda count, page=page: self.header.show_count(page, count))
+            page.advised.connect(lambda text, page=page: self._note_advice(page, text))
+        self.start.advised.connect(lambda text: self._note_advice(self.start, text))
+        for command in self.commands:
+            for key in command.keys:
+                QShortcut(QKeySequence(key), self).activated.connect(command.run)
+        self.header.chosen.connect(self.go)
+        self.header.keys_wanted.connect(self.show_keys)
+        self.desk.opened.connect(self._opened)
+        self.desk.went.connect(self._go_to)
+        QApplication.styleHints().colorSchemeChanged.connect(lambda _: self.repaint_all())
 
-    def go(self, _text: str) -> None:
-        """Show the chosen place."""
-        row = self.places.currentRow()
-        if self._ledger is None or row < 0:
+    # -- places
+
+    def go(self, page: Page) -> None:
+        """Show one of the six places; without a ledger there is only the start."""
+        self.show_page(page if self.desk.ledger is not None else self.start)
+
+    def show_page(self, page: Page) -> None:
+        present = self.stack.currentWidget()
+        if isinstance(present, Page) and present is not page:
+            present.leave()
+        self.stack.setCurrentWidget(page)
+        self.header.show_chosen(page)
+        self.advice.setText(self._advice.get(page, page.purpose))
+        if page in self.pages:
+            self.desk.memory.put("place", page.name)
+        page.enter()
+
+    def _go_to(self, name: str) -> None:
+        self.go(next(page for page in self.pages if page.name == name))
+
+    def _note_advice(self, page: Page, text: str) -> None:
+        self._advice[page] = text
+        if self.stack.currentWidget() is page:
+            self.advice.setText(text)
+
+    def _opened(self) -> None:
+        ledger = self.desk.ledger
+        self.header.show_ledger()
+        if ledger is None:
+            self.show_page(self.start)
             return
-        self._leave()
-        place = list(PLACES)[row]
-        self._rows.show_rows(Shown((), (), 0, ""))
-        self.advice.setText("Looking …")
-        self._looking = Looking(self._ledger, place)
-        self._looking.shown.connect(self._show)
-        self._looking.failed.connect(self._fail)
-        self._looking.told.connect(self.advice.setText)
-        self._looking.start()
+        self.setWindowTitle(f"{ledger.photo_root.name} - Pairwright")
+        name = self.desk.memory.text("place", self.pages[0].name)
+        self._go_to(name if name in {page.name for page in self.pages} else self.pages[0].name)
 
-    def _show(self, place: str, shown: Shown) -> None:
-        number = list(PLACES).index(place)
-        if number != self.places.currentRow():
-            return
-        self._rows.show_rows(shown)
-        self.table.resizeColumnsToContents()
-        self.advice.setText(shown.advice)
-        # The signals stay quiet: the text of the list changes, the place does not.
-        self.places.blockSignals(True)
-        self.places.item(number).setText(f"{place}  {shown.n_open}" if shown.n_open else place)
-        self.places.blockSignals(False)
+    def show_keys(self) -> None:
+        """The sheet of keys; Esc closes it."""
+        everywhere: Sequence[Command] = self.commands
+        places = [("everywhere", everywhere), *((p.name, p.commands) for p in (self.start, *self.pages) if p.commands)]
+        self.key_sheet = KeySheet(places, self)
+        self.key_sheet.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
+        self.key_sheet.open()
 
-    def _fail(self, _place: str, sentence: str) -> None:
-        self.advice.setText(sentence)
+    # -- the window itself
 
-    def _choose(self) -> None:
-        chosen = QFileDialog.getExistingDirectory(self, "Open a ledger")
-        if chosen:
-            self.open_ledger(Path(chosen))
+    def repaint_all(self) -> None:
+        """Dress everything after the system's scheme."""
+        self.desk.palette = theme.present_palette()
+        application = QApplication.instance()
+        if isinstance(application, QApplication):
+            theme.apply(application, self.desk.palette)
+        self.header.repaint_all()
+        self.desk.repainted.emit()
 
-    def _leave(self) -> None:
-        """Let go of the look under way: ask it to stop, and wait until it has."""
-        if self._looking is not None:
-            self._looking.blockSignals(True)
-            self._looking.stop()
-            self._looking.wait()
+    def close_window(self) -> None:
+        self.close()
 
     def closeEvent(self, event: QCloseEvent) -> None:  # noqa: N802 - Qt's own name
-        self._leave()
+        if self.desk.work.busy and not self._asked_to_close:
+            self._asked_to_close = True
+            self.desk.complained.emit(
+                f"{self.desk.work.name} is under way. Close once more to stop it; what was done is kept."
+            )
+            event.ignore()
+            return
+        present = self.stack.currentWidget()
+        if isinstance(present, Page):
+            present.leave()
+        self._remember()
+        self.desk.close()
         event.accept()
 
+    def _remember(self) -> None:
+        self.desk.memory.put("geometry", self.saveGeometry())
+        self.desk.memory.save()
 
-def open_desk(ledger: Path | None) -> int:
-    """Open the window and stay until it is closed. Raises what opening a ledger raises."""
-    if ledger is not None:
-        from curator.ledger import Ledger
-
-        Ledger.open(ledger).close()
-    application = QApplication.instance() or QApplication(sys.argv[:1])
-    window = Window(ledger)
-    window.show()
-    return int(application.exec())
+    def _restore(self) -> None:
+        geometry = self.desk.memory.blob("geometry")
+        if not geometry.isEmpty():
+            self.restoreGeometry(geometry)

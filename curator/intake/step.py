@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
+from PIL import Image
 
 from curator.domain import PhotoFile
 from curator.embedders import building
@@ -18,7 +19,7 @@ from curator.errors import BadInput, Stopped
 from curator.intake import pool
 from curator.intake.attributes import read_attributes
 from curator.intake.chunks import CHUNK, Task, read_chunk
-from curator.intake.decoding import DEFAULT_PIXEL_LIMIT, within_limit
+from curator.intake.decoding import DEFAULT_PIXEL_LIMIT, UndecodableError, decode, within_limit
 from curator.intake.reading import VERSION, Settings
 from curator.intake.walking import SIDECAR, Walk, walk
 from curator.ledger import NOT_READ_YET, Ledger
@@ -184,6 +185,22 @@ def _unreadable(ledger: Ledger, files: Iterable[PhotoFile], maker: str) -> tuple
         file.name: refused.get(file.digest) if file.digest in read else file.why or NOT_READ_YET for file in files
     }
     return tuple(sorted((name, why) for name, why in reasons.items() if why))
+
+
+def picture(ledger: Ledger, photo: str, *, longest: int) -> Image.Image | None:
+    """A photo as it lies in the photo root, upright, RGB, its longer side `longest` pixels at most.
+
+    None where the name is not on the roll, or the file is gone or damaged.
+    """
+    raw = ledger.raw_of([photo]).get(photo)
+    if raw is None:
+        return None
+    try:
+        image = decode(Path(os.fsdecode(os.fsencode(ledger.photo_root) + b"/" + raw)).read_bytes())
+    except (OSError, UndecodableError):
+        return None
+    image.thumbnail((longest, longest), Image.Resampling.BILINEAR)
+    return image
 
 
 @dataclass(frozen=True)

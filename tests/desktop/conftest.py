@@ -1,5 +1,65 @@
-"""The window without a screen."""
+"""The window without a screen, with settings of its own, and a small ledger."""
 
 import os
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+from PIL import Image, ImageDraw
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
+
+from curator.intake.step import run
+from curator.ledger import Ledger
+from curator.progress import Silent
+
+
+@pytest.fixture(autouse=True)
+def _own_settings(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("PAIRWRIGHT_CONFIG", str(tmp_path / "config"))
+
+
+def _drawn(person: int, photo: int) -> Image.Image:
+    """A plain drawing: people differ in colours, photos in where things are."""
+    image = Image.new("RGB", (120, 150), (200 - 30 * person, 90 + 25 * person, 120))
+    draw = ImageDraw.Draw(image)
+    x, y = 30 + 4 * photo, 40 + 3 * photo
+    draw.ellipse((x, y, x + 60, y + 75), fill=(230, 200 - 20 * person, 170), outline=(40, 30, 30), width=3)
+    draw.ellipse((x + 15, y + 25, x + 22, y + 32), fill=(20, 20 + 40 * person, 60))
+    draw.ellipse((x + 38, y + 25, x + 45, y + 32), fill=(20, 20 + 40 * person, 60))
+    draw.rectangle((5 * photo, 0, 5 * photo + 12, 10 + 6 * person), fill=(250, 250, 240))
+    return image
+
+
+@pytest.fixture(scope="session")
+def _drawn_root(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    root = tmp_path_factory.mktemp("desk") / "photos"
+    for person in range(4):
+        for photo in range(4):
+            path = root / f"r-{person:02d}" / f"{photo}.png"
+            path.parent.mkdir(parents=True, exist_ok=True)
+            _drawn(person, photo).save(path)
+    # The same shot under two people.
+    (root / "r-00" / "copy.png").write_bytes((root / "r-01" / "0.png").read_bytes())
+    (root / "attributes.csv").write_text("identity,club\nr-00,heron\nr-01,heron\nr-02,weir\nr-03,weir\n")
+    return root
+
+
+@pytest.fixture
+def desk_root(_drawn_root: Path) -> Path:
+    """A photo root of 17 photos of 4 people, one of them filed twice."""
+    return _drawn_root
+
+
+@pytest.fixture
+def desk_ledger(tmp_path: Path, _drawn_root: Path) -> Path:
+    """The ledger of that root, framed whole."""
+    with Ledger.create(tmp_path / "ledger", _drawn_root) as opened:
+        run(_drawn_root, opened, framing="whole", workers=1, progress=Silent())
+    return tmp_path / "ledger"
+
+
+@pytest.fixture
+def read_ledger(desk_ledger: Path) -> Callable[[], Ledger]:
+    """Opens the ledger from outside the window."""
+    return lambda: Ledger.open(desk_ledger)
