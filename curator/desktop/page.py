@@ -40,6 +40,7 @@ class Page(QWidget):
         super().__init__()
         self.desk = desk
         self.commands: list[Command] = []
+        self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         desk.opened.connect(self.ledger_opened)
         desk.said.connect(lambda _: self.something_said())
         desk.roll_changed.connect(self.ledger_opened)
@@ -47,6 +48,7 @@ class Page(QWidget):
 
     def enter(self) -> None:
         """The place is shown: take the focus, and look if what is shown is of the past."""
+        self.setFocus()
 
     def leave(self) -> None:
         """Another place is shown."""

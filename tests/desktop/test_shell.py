@@ -26,8 +26,8 @@ SHIFT = Qt.KeyboardModifier.ShiftModifier
 def opened(qtbot: QtBot, ledger: Path | None) -> Window:
     window = Window(ledger)
     qtbot.addWidget(window, before_close_func=lambda w: w.desk.close())
-    window.show()
-    qtbot.waitExposed(window)
+    with qtbot.waitActive(window):
+        window.show()
     return window
 
 
