@@ -14,8 +14,6 @@ from curator.resources import resource
 @lru_cache(256)
 def icon(name: str, colour: str) -> QIcon:
     """The icon `name` of resources/icons in a colour, at the sizes the window uses."""
-    if not resource("icons", f"{name}.svg").is_file():
-        return QIcon()
     source = resource("icons", f"{name}.svg").read_text(encoding="utf-8")
     renderer = QSvgRenderer(QByteArray(source.replace("currentColor", colour).encode()))
     made = QIcon()
