@@ -239,6 +239,10 @@ class Ledger:
         """Each identity with its number of photos, by name; fast however long the roll."""
         return _browsing.identity_counts(self._record)
 
+    def roll_stamp(self) -> str:
+        """A short text that changes with the roll and with what made its readings; cheap however long the roll."""
+        return f"{self.maker} {_browsing.roll_stamp(self._record)}"
+
     def photos_of(self, identity: str) -> list[tuple[str, str]]:
         """Name and digest (empty where unread) of the photos filed under an identity, by name."""
         return _browsing.photos_of(self._record, identity)

@@ -2,18 +2,24 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+from dataclasses import dataclass
+
 import numpy as np
+from numpy.typing import NDArray
 
 from curator.domain import Ints, MinedPair, PairAnswer, PairKind, PhotoAnswer, Readings, Roll
 from curator.errors import BadInput
-from curator.ledger import Ledger
+from curator.ledger import NOT_READ_YET, Ledger
 from curator.pairs.mining import Mined, hard_mated, hard_non_mated, hardest_mated, semi_hard
 from curator.pairs.trust import TrustModel, fit_trust
+from curator.pairs.typical import Crowd, brief, nearest_identities, spreads, to_own_people
 from curator.progress import Progress, stop_if_wanted
 from curator.verdicts import settle
 
 TRUST_SEED = 20_260_101
 """Fixed: the trust of a pair must not change from one look to the next."""
+_CROWD = "crowd-1"
 _MARGIN = 0.2
 _POOL = 50
 """Candidates looked at for each pair wanted, where a later filter thins them."""
@@ -80,3 +86,103 @@ def _mine(kind: PairKind, readings: Readings, roll: Roll, photos: Ints, limit: i
     pool = hard_non_mated(readings.embeddings, photos, roll.identity_of, limit * _POOL)
     a, b, s = semi_hard(pool, roll.identity_of, hardest, _MARGIN)
     return a[:limit], b[:limit], s[:limit]
+
+
+@dataclass(frozen=True)
+class SheetPhoto:
+    """One photo of an identity's sheet."""
+
+    name: str
+    digest: str
+    similarity: float | None
+    """Mean similarity to the identity's other photos; None where it is alone or has no embedding."""
+    why: str | None
+    """Why it cannot be used; None where it can."""
+    attributes: Mapping[str, str]
+
+
+@dataclass(frozen=True)
+class NearIdentity:
+    """Another identity that is like one, with a face of it."""
+
+    name: str
+    similarity: float
+    photo: str
+    """Its most typical photo."""
+    digest: str
+
+
+@dataclass(frozen=True)
+class IdentitySheet:
+    identity: str
+    photos: tuple[SheetPhoto, ...]
+    """From most to least typical; those without an embedding last, by name."""
+    nearest: tuple[NearIdentity, ...]
+
+
+def identity_sheet(ledger: Ledger, identity: str, *, progress: Progress) -> IdentitySheet:
+    """The photos of one identity and the identities most like it. Loads no more of the roll than these."""
+    names, crowd = _crowd(ledger, progress)
+    photos = _sheet_photos(ledger, identity)
+    near: list[NearIdentity] = []
+    if identity in names and crowd.counts[names.index(identity)]:
+        places, similarity = nearest_identities(crowd, names.index(identity))
+        for place, alike in zip(places.tolist(), similarity.tolist(), strict=True):
+            face = _sheet_photos(ledger, names[place])[0]
+            near.append(NearIdentity(names[place], round(alike, 4), face.name, face.digest))
+    return IdentitySheet(identity, photos, tuple(near))
+
+
+def spread(ledger: Ledger, *, progress: Progress) -> dict[str, float]:
+    """How spread each identity's photos are: 1 less the mean similarity of its pairs; only those that have pairs."""
+    names, crowd = _crowd(ledger, progress)
+    values = spreads(crowd)
+    return {name: round(value, 4) for name, value in zip(names, values.tolist(), strict=True) if value == value}
+
+
+def _sheet_photos(ledger: Ledger, identity: str) -> tuple[SheetPhoto, ...]:
+    rows = ledger.photos_of(identity)
+    readings = ledger.readings_of([digest for _, digest in rows if digest])
+    attributes = ledger.attributes_of([name for name, _ in rows])
+    embedded = [
+        (name, readings[d].embedding) for name, d in rows if d in readings and readings[d].embedding is not None
+    ]
+    vectors = [vector for _, vector in embedded if vector is not None]
+    own = to_own_people(np.stack(vectors).astype(np.float32)) if vectors else np.zeros(0)
+    similarity = {
+        name: value if value == value else None for (name, _), value in zip(embedded, own.tolist(), strict=True)
+    }
+    photos = []
+    for name, digest in rows:
+        reading = readings.get(digest)
+        why = NOT_READ_YET if reading is None else reading.why or ("no face found" if reading.faces == 0 else None)
+        photos.append(SheetPhoto(name, digest, similarity.get(name), why, attributes[name]))
+    embedded_names = {name for name, _ in embedded}
+    photos.sort(key=lambda p: (p.name not in embedded_names, -(p.similarity or 0.0), p.name))
+    return tuple(photos)
+
+
+def _crowd(ledger: Ledger, progress: Progress) -> tuple[list[str], Crowd]:
+    """All identities in brief; kept in the ledger until the roll or what made its readings changes."""
+    counts = ledger.identity_counts()
+    names = [name for name, _ in counts]
+    key = f"{_CROWD} {ledger.roll_stamp()}"
+    kept = ledger.array("crowd", key)
+    if kept is not None and len(kept) == len(names):
+        return names, Crowd.unpacked(kept)
+    progress.begin("getting to know the identities", len(names))
+    rows: dict[int, tuple[NDArray[np.float64], float, int]] = {}
+    for place, name in enumerate(names):
+        stop_if_wanted(progress)
+        digests = [digest for _, digest in ledger.photos_of(name) if digest]
+        known = [r.embedding for r in ledger.readings_of(digests).values() if r.embedding is not None]
+        if known:
+            rows[place] = brief(np.stack(known).astype(np.float32))
+        progress.advance()
+    dimensions = len(next(iter(rows.values()))[0]) if rows else 0
+    crowd = Crowd(np.zeros((len(names), dimensions)), np.zeros(len(names)), np.zeros(len(names), dtype=np.int64))
+    for place, (vector, square, count) in rows.items():
+        crowd.vectors[place], crowd.squares[place], crowd.counts[place] = vector, square, count
+    with ledger.writing():
+        ledger.put_array("crowd", key, crowd.packed())
+    return names, crowd

@@ -11,11 +11,39 @@ from pathlib import Path
 import numpy as np
 
 from curator.domain import Verdict
+from curator.doubts.step import find_doubts
+from curator.echoes.step import find_echoes
 from curator.errors import BadInput
 from curator.ledger import Ledger
 from curator.measures.agreement import cohen_kappa, fleiss_kappa, krippendorff_alpha
+from curator.pairs.step import load_trust
+from curator.progress import Progress
+from curator.review.questions import Order, Question, matter_of
+from curator.review.questions import questions as _questions
 from curator.review.verdict_csv import parse_verdicts
 from curator.verdicts import pair_key, settle
+
+
+def questions(
+    ledger: Ledger,
+    order: Order,
+    *,
+    limit: int = 500,
+    seed: int = 0,
+    answered: bool = False,
+    progress: Progress,
+) -> tuple[Question, ...]:
+    """Pairs to ask people about, in the order asked for; with `answered` those too that have a standing verdict.
+
+    Raises `BadInput` where no photo has an embedding.
+    """
+    doubts = find_doubts(ledger, progress=progress)
+    echoes = find_echoes(ledger, progress=progress)
+    roll, readings, trust = load_trust(ledger, progress=progress)
+    progress.begin("choosing the questions", None)
+    embedded = np.flatnonzero(readings.embedded).tolist()
+    matter = matter_of(roll, trust, embedded, doubts, echoes, settle(ledger.verdicts()), answered=answered)
+    return _questions(matter, order, limit, np.random.default_rng(seed))
 
 
 @dataclass(frozen=True)

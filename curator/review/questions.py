@@ -1,0 +1,255 @@
+"""Which pairs to ask people about, in which order, and why each is asked."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass
+from enum import StrEnum
+
+import numpy as np
+
+from curator.domain import Doubt, DoubtKind, EchoGroup, Ints, PhotoAnswer, Roll
+from curator.pairs.mining import Mined, hard_mated, hard_non_mated
+from curator.pairs.similarity import between
+from curator.pairs.trust import TrustModel
+from curator.verdicts import Settled, pair_key
+
+_OVER = 3
+"""Pairs mined for each question wanted: some are answered, set aside, or copies."""
+
+
+class Order(StrEnum):
+    """The orders in which pairs are asked."""
+
+    MOST_INFORMATIVE = "most-informative"
+    HARDEST_MATED = "hardest-mated"
+    HARDEST_NON_MATED = "hardest-non-mated"
+    RANDOM = "random"
+
+
+@dataclass(frozen=True, slots=True)
+class Question:
+    """A pair for a person to answer."""
+
+    photo_a: str
+    photo_b: str
+    identity_a: str
+    identity_b: str
+    label: int
+    """1 mated by folder, 0 not."""
+    similarity: float
+    trust: float
+    gain: float
+    """How many wrong pairs an answer may settle: the doubt in the label times the pairs that hang on it."""
+    why: str
+    """One sentence for the person."""
+    open: bool = True
+    """No standing verdict has answered it."""
+
+
+@dataclass(frozen=True)
+class Matter:
+    """All that questions are drawn from."""
+
+    roll: Roll
+    trust: TrustModel
+    photos: Ints
+    """Places along the roll of the photos that may be asked about, ascending."""
+    doubts: tuple[Doubt, ...]
+    settled: Settled
+    same_shot: Mapping[str, str]
+    """Photo to the echo group it is in."""
+    answered: bool
+    """Ask pairs with a standing verdict too."""
+
+
+def matter_of(
+    roll: Roll,
+    trust: TrustModel,
+    embedded: Iterable[int],
+    doubts: tuple[Doubt, ...],
+    echoes: Iterable[EchoGroup],
+    settled: Settled,
+    *,
+    answered: bool = False,
+) -> Matter:
+    """The matter for questions: photos that people set aside or moved away are not asked about."""
+    gone = {photo for photo, answer in settled.photos.items() if answer != PhotoAnswer.BELONGS}
+    photos = np.array([i for i in embedded if roll.photos[i] not in gone], dtype=np.int64)
+    same_shot = {photo: group.id for group in echoes for photo in group.photos}
+    return Matter(roll, trust, photos, doubts, settled, same_shot, answered)
+
+
+def questions(matter: Matter, order: Order, limit: int, rng: np.random.Generator) -> tuple[Question, ...]:
+    """Up to `limit` questions in the order asked for; no pair twice, none of two copies of one shot."""
+    found = _FINDERS[order](matter, limit, rng)
+    kept: dict[tuple[str, str], Question] = {}
+    for question in found:
+        if question.photo_a == question.photo_b or not (question.open or matter.answered):
+            continue
+        shot = matter.same_shot.get(question.photo_a)
+        if shot is not None and shot == matter.same_shot.get(question.photo_b):
+            continue
+        key = pair_key(question.photo_a, question.photo_b)
+        if key not in kept or question.gain > kept[key].gain:
+            kept[key] = question
+    chosen = list(kept.values())
+    return tuple(_varied(chosen)[:limit] if order == Order.MOST_INFORMATIVE else chosen[:limit])
+
+
+def _varied(found: list[Question]) -> list[Question]:
+    """By gain, but every identity's first question before any identity's second: no bad folder may fill the desk."""
+    met: Counter[str] = Counter()
+    ranked = []
+    for question in sorted(found, key=lambda q: (-q.gain, q.photo_a, q.photo_b)):
+        sides = {question.identity_a, question.identity_b}
+        ranked.append((max(met[side] for side in sides), question))
+        met.update(sides)
+    return [question for _, question in sorted(ranked, key=lambda item: item[0])]
+
+
+def _most_informative(matter: Matter, limit: int, _: np.random.Generator) -> list[Question]:
+    found = _of_doubts(matter)
+    for mined, label in ((_mined(matter, hard_mated, limit), 1), (_mined(matter, hard_non_mated, limit), 0)):
+        why = (
+            "Filed under one name, yet these two look unlike."
+            if label
+            else "Filed under two names, yet these two look alike."
+        )
+        found += _asked(matter, *mined[:2], label, why)
+    return found
+
+
+def _hardest(mine: Callable[..., Mined], label: int, why: str) -> Callable[..., list[Question]]:
+    def found(matter: Matter, limit: int, _: np.random.Generator) -> list[Question]:
+        return _asked(matter, *_mined(matter, mine, limit)[:2], label, why)
+
+    return found
+
+
+def _mined(matter: Matter, mine: Callable[..., Mined], limit: int) -> Mined:
+    return mine(matter.trust.embeddings, matter.photos, matter.roll.identity_of, limit * _OVER)
+
+
+def _random(matter: Matter, limit: int, rng: np.random.Generator) -> list[Question]:
+    """A uniform sample, half of all mated and half of all non-mated pairs, in a shuffled order."""
+    identity = matter.roll.identity_of[matter.photos]
+    order = np.argsort(identity, kind="stable")
+    photos, identity = matter.photos[order], identity[order]
+    starts = np.flatnonzero(np.r_[True, identity[1:] != identity[:-1]]) if len(photos) else np.zeros(0, dtype=np.int64)
+    sizes = np.diff(np.r_[starts, len(photos)])
+    mated = sizes * (sizes - 1) // 2
+    i, j = _mated_sample(photos, starts, mated, limit, rng)
+    a, b = _non_mated_sample(photos, identity, limit, rng)
+    why = "One of a random sample, for estimating how many labels are wrong."
+    found = _asked(matter, i, j, 1, why) + _asked(matter, a, b, 0, why)
+    return [found[k] for k in rng.permutation(len(found))]
+
+
+def _mated_sample(photos: Ints, starts: Ints, mated: Ints, limit: int, rng: np.random.Generator) -> tuple[Ints, Ints]:
+    total = int(mated.sum())
+    drawn = rng.choice(total, size=min(limit, total), replace=False) if total else np.zeros(0, dtype=np.int64)
+    ends = np.cumsum(mated)
+    group = np.searchsorted(ends, drawn, side="right")
+    # The k-th pair (first < second) of a group, counted by its second member: k = second * (second - 1) / 2 + first.
+    k = drawn - (ends - mated)[group]
+    second = ((1 + np.sqrt(1 + 8 * k.astype(np.float64))) / 2).astype(np.int64)
+    second -= second * (second - 1) // 2 > k
+    second += (second + 1) * second // 2 <= k
+    first = k - second * (second - 1) // 2
+    return photos[starts[group] + first], photos[starts[group] + second]
+
+
+def _non_mated_sample(photos: Ints, identity: Ints, limit: int, rng: np.random.Generator) -> tuple[Ints, Ints]:
+    if len(set(identity.tolist())) < 2:
+        empty = np.zeros(0, dtype=np.int64)
+        return empty, empty
+    # Pairs of places are drawn until enough are of two people; uniform over all of them, repeats fall out later.
+    a, b = rng.integers(len(photos), size=(2, 20 * limit + 100))
+    apart = identity[a] != identity[b]
+    return photos[a[apart][:limit]], photos[b[apart][:limit]]
+
+
+def _asked(matter: Matter, i: Ints, j: Ints, label: int, why: str, gain: float | None = None) -> list[Question]:
+    """Questions about pairs of places along the roll; `gain` as given, else the doubt in the label itself."""
+    roll, trust = matter.roll, matter.trust
+    similarity = between(trust.embeddings, i, j)
+    trusted = trust.mated(i, j) if label else trust.non_mated(i, j)
+    found = []
+    for a, b, s, t in zip(i.tolist(), j.tolist(), similarity.tolist(), trusted.tolist(), strict=True):
+        photos = (roll.photos[a], roll.photos[b])
+        names = (roll.identities[roll.identity_of[a]], roll.identities[roll.identity_of[b]])
+        is_open = pair_key(*photos) not in matter.settled.pairs
+        worth = (1 - t) if gain is None else gain
+        found.append(Question(*photos, *names, label, round(s, 4), round(t, 4), round(worth, 4), why, is_open))
+    return found
+
+
+def _of_doubts(matter: Matter) -> list[Question]:
+    """What would settle each open doubt: the most typical photos speak for their people."""
+    roll, place = matter.roll, matter.roll.index_of()
+    typical = _Typical(matter)
+    found: list[Question] = []
+
+    def ask(a: int | None, b: int | None, label: int, why: str, gain: float) -> None:
+        if a is not None and b is not None and a != b:
+            found.extend(_asked(matter, np.array([a]), np.array([b]), label, why, gain))
+
+    for doubt in matter.doubts:
+        if doubt.settled:
+            continue
+        if doubt.kind == DoubtKind.MISFILED_PHOTO:
+            photo = place[doubt.photos[0]]
+            home, *others = (typical.place_of[name] for name in doubt.identities)
+            hang = typical.count(home) - 1
+            why = _WHY_MISFILED.format(roll.identities[home])
+            ask(photo, typical.of(home, without=photo), 1, why, doubt.probability * hang)
+            for other in others:
+                why = _WHY_BELONGS.format(roll.identities[other], roll.identities[home])
+                ask(photo, typical.of(other), 0, why, doubt.probability * typical.count(other))
+        elif doubt.kind == DoubtKind.ONE_PERSON_TWO_FOLDERS:
+            one, two = (typical.place_of[name] for name in doubt.identities)
+            why = f"{doubt.identities[0]} and {doubt.identities[1]} may be one person."
+            ask(typical.of(one), typical.of(two), 0, why, doubt.probability * typical.count(one) * typical.count(two))
+        elif doubt.kind == DoubtKind.TWO_PEOPLE_ONE_FOLDER:
+            parts = [[place[name] for name in part] for part in doubt.evidence["parts"]]
+            why = f"{doubt.identities[0]} may hold two people; here is one photo of each part."
+            hang = len(parts[0]) * len(parts[1])
+            ask(typical.among(parts[0]), typical.among(parts[1]), 1, why, doubt.probability * hang)
+    return found
+
+
+_WHY_MISFILED = "Both are filed under {}, but the first may not belong there."
+_WHY_BELONGS = "The first looks more like {} than like {}, under which it is filed."
+
+
+class _Typical:
+    """The most typical photos of each identity: those most like its others."""
+
+    def __init__(self, matter: Matter) -> None:
+        roll, own = matter.roll, np.nan_to_num(matter.trust.own, nan=-np.inf)
+        self.place_of = {name: i for i, name in enumerate(roll.identities)}
+        self._own = own
+        self._allowed = set(matter.photos.tolist())
+        photos = matter.photos[np.lexsort((matter.photos, -own[matter.photos], roll.identity_of[matter.photos]))]
+        self._of: dict[int, list[int]] = {}
+        for photo in photos.tolist():
+            self._of.setdefault(int(roll.identity_of[photo]), []).append(photo)
+
+    def count(self, identity: int) -> int:
+        return len(self._of.get(identity, ()))
+
+    def of(self, identity: int, *, without: int = -1) -> int | None:
+        return next((photo for photo in self._of.get(identity, ()) if photo != without), None)
+
+    def among(self, photos: Iterable[int]) -> int | None:
+        return max((p for p in photos if p in self._allowed), key=lambda p: (self._own[p], -p), default=None)
+
+
+_FINDERS: Mapping[Order, Callable[[Matter, int, np.random.Generator], list[Question]]] = {
+    Order.MOST_INFORMATIVE: _most_informative,
+    Order.HARDEST_MATED: _hardest(hard_mated, 1, "One of the mated pairs that look least alike."),
+    Order.HARDEST_NON_MATED: _hardest(hard_non_mated, 0, "One of the non-mated pairs that look most alike."),
+    Order.RANDOM: _random,
+}
