@@ -68,6 +68,9 @@ def split(options: Namespace) -> int:
                 "leaks": report.leaks,
                 "largest_tied": list(report.largest_tied),
                 "ties": [asdict(tie) for tie in report.ties],
+                "groups": [asdict(group) for group in report.groups],
+                "leaking": list(report.leaking),
+                "in_no_split": report.in_no_split,
                 "conflicts": list(report.conflicts),
                 "shortfalls": list(report.shortfalls),
             }
@@ -91,7 +94,7 @@ def split(options: Namespace) -> int:
         f"{len(report.ties)} ties; the largest tied group holds {len(report.largest_tied)} identities; "
         f"gap to the bound {report.assignment.gap_to_bound:.5f}; {report.leaks} leaks"
     )
-    for text in (*report.shortfalls, *report.conflicts):
+    for text in (*report.shortfalls, *report.conflicts, *report.leaking):
         showing.line(text)
     return 0
 

@@ -194,7 +194,7 @@ def test_the_demo_and_the_window_tell_of_themselves_too(
     assert _json(capsys, "demo", "tarn") | {"folder": "tarn", "equal_error_rate": None, "sound": True} == _json(
         capsys, "demo", "tarn"
     )
-    monkeypatch.setattr("curator.desktop.window.open_desk", lambda _: 0)
+    monkeypatch.setattr("curator.desktop.app.open_desk", lambda _: 0)
     assert _json(capsys, "desk", "--ledger", "tarn/ledger") == {"ledger": "tarn/ledger"}
     assert _json(capsys, "desk") == {"ledger": None}
 
