@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import hashlib
 from collections.abc import Mapping, Sequence
 
 from curator.ledger.database import Database
@@ -14,15 +13,6 @@ _AT_ONCE = 500
 def identity_counts(record: Database) -> list[tuple[str, int]]:
     rows = record.rows("SELECT identity, count(*) FROM photo GROUP BY identity")
     return sorted((str(identity), int(count)) for identity, count in rows)
-
-
-def roll_stamp(record: Database) -> str:
-    """A short text that changes with the roll. Cheaper than its digest: it looks at sizes and times, not at names."""
-    sums = record.rows(
-        "SELECT count(*), total(size), total(mtime_ns % 1000003), total(length(digest)), max(id) FROM photo"
-    )
-    told = repr((sums, identity_counts(record)))
-    return hashlib.sha256(told.encode()).hexdigest()[:24]
 
 
 def photos_of(record: Database, identity: str) -> list[tuple[str, str]]:

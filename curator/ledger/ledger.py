@@ -241,7 +241,7 @@ class Ledger:
 
     def roll_stamp(self) -> str:
         """A short text that changes with the roll and with what made its readings; cheap however long the roll."""
-        return f"{self.maker} {_browsing.roll_stamp(self._record)}"
+        return f"{self.maker} {_record.roll_turn(self._record)}"
 
     def photos_of(self, identity: str) -> list[tuple[str, str]]:
         """Name and digest (empty where unread) of the photos filed under an identity, by name."""

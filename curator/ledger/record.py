@@ -57,11 +57,25 @@ def put_files(record: Database, found: Sequence[PhotoFile]) -> None:
                size = excluded.size, mtime_ns = excluded.mtime_ns, digest = excluded.digest, why = excluded.why""",
             ((f.raw, f.name, f.identity, f.size, f.mtime_ns, f.digest, f.why) for f in found),
         )
+        _next_turn(record)
 
 
 def remove_files(record: Database, raws: Iterable[bytes]) -> None:
     with record.transaction():
         record.execute_many("DELETE FROM photo WHERE raw = ?", ((raw,) for raw in raws))
+        _next_turn(record)
+
+
+def roll_turn(record: Database) -> int:
+    """How often photos were put on the roll or taken off it."""
+    return int(setting(record, "roll_turn") or 0)
+
+
+def _next_turn(record: Database) -> None:
+    record.execute(
+        """INSERT INTO setting VALUES ('roll_turn', '1')
+           ON CONFLICT (key) DO UPDATE SET value = CAST(CAST(value AS INTEGER) + 1 AS TEXT)"""
+    )
 
 
 def put_attributes(record: Database, rows: Mapping[str, Mapping[str, str]]) -> None:

@@ -161,3 +161,19 @@ def test_arrays_hang_on_their_key(ledger: Ledger) -> None:
     np.testing.assert_array_equal(known, values[:, ::-1])
     assert known.dtype == np.float32
     assert ledger.array("centres", "k2") is None
+
+
+def test_the_stamp_changes_with_the_roll_and_with_what_read_it(
+    ledger: Ledger, photo_file: Callable[..., PhotoFile], reading: Callable[..., Reading]
+) -> None:
+    stamps = [ledger.roll_stamp()]
+    with ledger.writing():
+        ledger.set_maker("m1", framing="face", card="default")
+        stamps.append(ledger.roll_stamp())
+        ledger.put_chunk([photo_file("a/1.jpg", "a" * 64)], [reading("a" * 64)], maker="m1")
+        stamps.append(ledger.roll_stamp())
+        ledger.remove_files([b"a/1.jpg"])
+        stamps.append(ledger.roll_stamp())
+        ledger.put_verdicts([_verdict(1)])
+    assert len(set(stamps)) == 4
+    assert ledger.roll_stamp() == stamps[-1]
