@@ -1,6 +1,6 @@
 """Photos a second for each part of intake and for the whole, against the bare networks over the same inputs.
 
-Run with `python tests/bench/bench_intake.py`. Subjects are the drawn portraits of `demo_faces/`, each eight times under
+Run with `python tests/bench/bench_intake.py`. Subjects are the drawn portraits of `demo_faces/`, each twelve times under
 digests of its own. The reference is two processes that run only the two onnxruntime sessions, over just the pyramid
 levels and crops that intake gives them. Intake is meant to reach 70 % of it, start of its processes included. Beside
 the rates stands the processor time a photo, which says more where something else is running.
@@ -32,7 +32,7 @@ from curator.ledger import Ledger
 from curator.progress import Silent
 
 _PORTRAITS = Path(__file__).parents[2] / "demo_faces" / "photos"
-_COPIES = 8
+_COPIES = 12
 _PROCESSES = 2
 _SAMPLE = 200
 
