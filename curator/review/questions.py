@@ -98,6 +98,19 @@ def questions(matter: Matter, order: Order, limit: int, rng: np.random.Generator
     return tuple(_varied(chosen)[:limit] if order == Order.MOST_INFORMATIVE else chosen[:limit])
 
 
+def about(matter: Matter, pairs: Iterable[tuple[str, str]]) -> tuple[Question, ...]:
+    """Questions about given pairs, in their order; pairs with a photo that is not embedded on the roll are left out."""
+    place = matter.roll.index_of()
+    allowed = set(matter.photos.tolist())
+    found: list[Question] = []
+    for first, second in pairs:
+        a, b = place.get(first, -1), place.get(second, -1)
+        if a in allowed and b in allowed and a != b:
+            label = int(matter.roll.identity_of[a] == matter.roll.identity_of[b])
+            found += _asked(matter, np.array([a]), np.array([b]), label, "You wanted this pair asked.")
+    return tuple(found)
+
+
 def _varied(found: list[Question]) -> list[Question]:
     """By gain, but every identity's first question before any identity's second: no bad folder may fill the desk."""
     met: Counter[str] = Counter()

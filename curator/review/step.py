@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import unicodedata
 from collections import defaultdict
+from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
 from pathlib import Path
@@ -18,7 +19,7 @@ from curator.ledger import Ledger
 from curator.measures.agreement import cohen_kappa, fleiss_kappa, krippendorff_alpha
 from curator.pairs.step import load_trust
 from curator.progress import Progress
-from curator.review.questions import Order, Question, matter_of
+from curator.review.questions import Matter, Order, Question, about, matter_of
 from curator.review.questions import questions as _questions
 from curator.review.verdict_csv import parse_verdicts
 from curator.verdicts import pair_key, settle
@@ -37,13 +38,22 @@ def questions(
 
     Raises `BadInput` where no photo has an embedding.
     """
+    matter = _matter(ledger, answered, progress)
+    return _questions(matter, order, limit, np.random.default_rng(seed))
+
+
+def questions_about(ledger: Ledger, pairs: Sequence[tuple[str, str]], *, progress: Progress) -> tuple[Question, ...]:
+    """The given pairs as questions, in their order. Raises `BadInput` where no photo has an embedding."""
+    return about(_matter(ledger, True, progress), pairs)
+
+
+def _matter(ledger: Ledger, answered: bool, progress: Progress) -> Matter:
     doubts = find_doubts(ledger, progress=progress)
     echoes = find_echoes(ledger, progress=progress)
     roll, readings, trust = load_trust(ledger, progress=progress)
     progress.begin("choosing the questions", None)
     embedded = np.flatnonzero(readings.embedded).tolist()
-    matter = matter_of(roll, trust, embedded, doubts, echoes, settle(ledger.verdicts()), answered=answered)
-    return _questions(matter, order, limit, np.random.default_rng(seed))
+    return matter_of(roll, trust, embedded, doubts, echoes, settle(ledger.verdicts()), answered=answered)
 
 
 @dataclass(frozen=True)

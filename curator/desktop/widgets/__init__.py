@@ -1,0 +1,1 @@
+"""What several places share: panes, sheets, charts."""
