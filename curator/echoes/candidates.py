@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from curator.domain import Codes, Ints, Readings
-from curator.neighbours.codes import collapsed, within
+from curator.neighbours.codes import gathered, within
 from curator.neighbours.nearest import nearest
 
 _RADIUS = 10
@@ -84,15 +84,14 @@ def _distinct(pairs: Ints, digests: Sequence[str]) -> Pairs:
 
 def _by_code(codes: Codes) -> Pairs:
     """Pairs within the radius: one photo stands for all of its code against other codes, and chains tie the rest."""
-    distinct, place = collapsed(codes)
+    found = gathered(codes, _RADIUS)
+    place = found.place
     order = np.argsort(place, kind="stable")
-    first = order[np.searchsorted(place[order], np.arange(len(distinct)))]
-    near, distance = within(distinct, None, _RADIUS)
     chains = [
         np.stack([order[:-step], order[step:]], axis=1)[place[order[:-step]] == place[order[step:]]]
         for step in range(1, _MOST_OF_ONE_CODE + 1)
     ]
-    return np.concatenate([first[_nearest_of_each(near, distance)], *chains])
+    return np.concatenate([found.first[_nearest_of_each(found.pairs, found.distance)], *chains])
 
 
 def _by_mirror(mirror: Codes, codes: Codes) -> Pairs:

@@ -6,7 +6,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from curator.neighbours import codes as _codes
-from curator.neighbours.codes import collapsed, within
+from curator.neighbours.codes import gathered, within
 from curator.neighbours.components import components
 from curator.neighbours.nearest import nearest
 
@@ -57,12 +57,49 @@ def test_a_radius_out_of_reach_is_refused() -> None:
         within(np.zeros(1, dtype=np.uint64), None, 12)
 
 
-@given(_CODES)
-def test_collapsed_codes_can_be_spread_out_again(codes: list[int]) -> None:
+def test_twenty_thousand_codes_against_brute_force() -> None:
+    rng = np.random.default_rng(15)
+    codes = rng.integers(0, 2**64, 20_000, dtype=np.uint64)
+    # Copies with 0 to 14 bits turned, wherever they lie, so that each band and each distance has its pairs.
+    turned = np.array([rng.permutation(64)[:14] for _ in range(5000)], dtype=np.uint64)
+    codes[15_000:] = codes[:5000]
+    turns = rng.integers(0, 15, 5000)
+    for place in range(14):
+        rows = np.flatnonzero(turns > place)
+        codes[15_000 + rows] ^= np.uint64(1) << turned[rows, place]
+    pairs, distance = within(codes, None, 10)
+    expected = []
+    for start in range(0, len(codes), 1000):
+        apart = np.bitwise_count(codes[start : start + 1000, None] ^ codes[None])
+        i, j = np.nonzero(apart <= 10)
+        expected.append(np.stack([i + start, j], axis=1)[i + start < j])
+    assert (pairs == np.concatenate(expected)).all()
+    assert set(distance.tolist()) == set(range(11))
+
+
+@given(st.lists(st.integers(0, 7), max_size=20), st.integers(0, 2))
+def test_gathered_codes_can_be_spread_out_to_all_pairs(codes: list[int], radius: int) -> None:
     array = np.array(codes, dtype=np.uint64)
-    distinct, place = collapsed(array)
-    assert (distinct[place] == array).all()
-    assert len(set(distinct.tolist())) == len(distinct)
+    found = gathered(array, radius)
+    assert (array[found.first][found.place] == array).all()
+    near = {(i, i) for i in range(len(found.first))} | {(i, j) for i, j in found.pairs.tolist()}
+    place = found.place.tolist()
+    spread = {
+        (i, j)
+        for i in range(len(codes))
+        for j in range(i + 1, len(codes))
+        if tuple(sorted((place[i], place[j]))) in near
+    }
+    assert spread == _slow_within(codes, None, radius)
+
+
+def test_a_hundred_thousand_flat_pictures_are_one_group() -> None:
+    codes = np.zeros(100_000, dtype=np.uint64)
+    codes[::100] = np.arange(1000, dtype=np.uint64)
+    found = gathered(codes, 3)
+    assert len(found.first) == 1000
+    expected = _slow_within(list(range(1000)), None, 3)
+    assert {(i, j) for i, j in codes[found.first][found.pairs].tolist()} == expected
 
 
 @settings(max_examples=40, deadline=None)
