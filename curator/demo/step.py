@@ -99,6 +99,18 @@ def run_demo(folder: Path, *, progress: Progress) -> DemoReport:
     )
 
 
+def read_demo(folder: Path, *, progress: Progress) -> Path:
+    """Draw the set into `folder` (or use the one there) and take it in; returns the path of its ledger.
+
+    Raises `BadInput` where `folder` holds something else, `Stopped`.
+    """
+    folder = folder.absolute()
+    _drawn(folder, progress)
+    with Ledger.create(folder / "ledger", folder / PHOTOS) as ledger:
+        run_intake(folder / PHOTOS, ledger, progress=progress)
+        return ledger.path
+
+
 def _drawn(folder: Path, progress: Progress) -> AnswerSheet:
     if (folder / SHEET).is_file():
         return read_answer_sheet(folder / SHEET)

@@ -40,9 +40,7 @@ def find_echoes(ledger: Ledger, *, progress: Progress) -> tuple[EchoGroup, ...]:
     split = ledger.split()
     split_of = split[0].split_of if split else None
     roll = ledger.roll()
-    # Not the ledger's whole state: a verdict changes nothing here, and must not cost a search.
-    told = json.dumps([ledger.maker, roll.photos, roll.digests, roll.identities, roll.identity_of.tolist()])
-    key = f"{_VERSION} {hashlib.sha256(told.encode()).hexdigest()[:24]}"
+    key = _key(ledger, roll)
     known = ledger.finding("echo-links", key)
     readings = ledger.readings(roll)
     if known is None:
@@ -52,6 +50,18 @@ def find_echoes(ledger: Ledger, *, progress: Progress) -> tuple[EchoGroup, ...]:
     else:
         links = [_from_document(row) for row in known]
     return group(links, roll, readings, split_of)
+
+
+def kept_links(ledger: Ledger) -> tuple[EchoLink, ...] | None:
+    """The links that `find_echoes` found on this roll; None where it was not looked for. Nothing is searched."""
+    known = ledger.finding("echo-links", _key(ledger, ledger.roll()))
+    return None if known is None else tuple(_from_document(row) for row in known)
+
+
+def _key(ledger: Ledger, roll: Roll) -> str:
+    # Not the ledger's whole state: a verdict changes nothing here, and must not cost a search.
+    told = json.dumps([ledger.maker, roll.photos, roll.digests, roll.identities, roll.identity_of.tolist()])
+    return f"{_VERSION} {hashlib.sha256(told.encode()).hexdigest()[:24]}"
 
 
 def _links(ledger: Ledger, roll: Roll, readings: Readings, found: Candidates, progress: Progress) -> list[EchoLink]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import time
+from collections import Counter
 from collections.abc import Iterable, Mapping, Sequence, Set
 from dataclasses import dataclass
 from pathlib import Path
@@ -23,7 +24,7 @@ from curator.intake.decoding import DEFAULT_PIXEL_LIMIT, UndecodableError, decod
 from curator.intake.reading import VERSION, Settings
 from curator.intake.walking import SIDECAR, Walk, walk
 from curator.ledger import NOT_READ_YET, Ledger
-from curator.progress import Progress
+from curator.progress import Progress, stop_if_wanted
 
 
 @dataclass(frozen=True)
@@ -39,6 +40,56 @@ class IntakeReport:
     """Photo and why, for every photo of the roll that cannot be read."""
     seconds: float
     skipped: Mapping[str, int]
+
+
+@dataclass(frozen=True)
+class LookAhead:
+    """What an intake would find in a photo root."""
+
+    photos: int
+    identities: int
+    alone: int
+    """Identities of a single photo: they give no mated pair."""
+    most: int
+    """Photos of the identity that has most."""
+    size: int
+    """Bytes of all photos."""
+    attributes: tuple[str, ...] | None
+    """The attributes that the root's `attributes.csv` tells; None where there is none."""
+    fault: str
+    """Why intake would refuse that CSV, in one sentence; empty where it would not."""
+    skipped: Mapping[str, int]
+    """Reason to how many files or folders intake would pass over."""
+
+
+def look_ahead(root: Path, *, progress: Progress) -> LookAhead:
+    """Look through the folders of a photo root without opening a photo. Raises `BadInput`, `Stopped`."""
+    progress.begin("looking through the folders", None)
+
+    def heed() -> None:
+        stop_if_wanted(progress)
+        progress.advance()
+
+    found = walk(root, heed)
+    attributes: tuple[str, ...] | None = None
+    fault = ""
+    if (root / SIDECAR).is_file():
+        try:
+            told = read_attributes(root / SIDECAR, found.files)
+            attributes = tuple(dict.fromkeys(name for row in told.rows.values() for name in row))
+        except BadInput as error:
+            fault = str(error)
+    counts = Counter(file.identity for file in found.files)
+    return LookAhead(
+        photos=len(found.files),
+        identities=len(counts),
+        alone=sum(n == 1 for n in counts.values()),
+        most=max(counts.values(), default=0),
+        size=sum(file.size for file in found.files),
+        attributes=attributes,
+        fault=fault,
+        skipped=dict(sorted(found.skipped.items())),
+    )
 
 
 def run(

@@ -6,7 +6,7 @@ import errno
 import os
 import stat
 from collections import Counter, deque
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 from pathlib import Path
 
@@ -34,15 +34,15 @@ class Walk:
         return any(raw == place or raw.startswith(place + b"/") for place in self.unseen)
 
 
-def walk(root: Path) -> Walk:
+def walk(root: Path, heed: Callable[[], None] = lambda: None) -> Walk:
     """Find all photos below `root`; the photo root itself is no identity, so photos directly in it are passed over.
 
-    Links are followed, each real folder is visited once, hidden names are skipped.
-    Raises `BadInput` where `root` is no readable folder.
+    Links are followed, each real folder is visited once, hidden names are skipped. `heed` is called once a folder;
+    what it raises ends the walk. Raises `BadInput` where `root` is no readable folder.
     """
     found = Walk()
     statuses: dict[bytes, os.stat_result] = {}
-    for raw, status in _entries(root, found):
+    for raw, status in _entries(root, found, heed):
         if b"/" in raw:
             statuses[raw] = status
         else:
@@ -63,7 +63,7 @@ def walk(root: Path) -> Walk:
     return found
 
 
-def _entries(root: Path, found: Walk) -> Iterator[tuple[bytes, os.stat_result]]:
+def _entries(root: Path, found: Walk, heed: Callable[[], None]) -> Iterator[tuple[bytes, os.stat_result]]:
     """Photos below `root`: raw name relative to it, and status.
 
     A folder that lies in the root under its own name is met there and not through a link from elsewhere, whatever
@@ -73,6 +73,7 @@ def _entries(root: Path, found: Walk) -> Iterator[tuple[bytes, os.stat_result]]:
     folders, linked = [b""], deque[bytes]()
     seen: set[tuple[int, int]] = set()
     while folders or linked:
+        heed()
         folder = folders.pop() if folders else linked.popleft()
         inner: list[bytes] = []
         for entry in _listed(base, folder, seen, found):

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from datetime import UTC, datetime
 
 from curator.domain import Act, EchoAnswer, EchoVerdict, PairAnswer, PhotoAnswer, Verdict
+from curator.ledger.browsing import batched_names
 from curator.ledger.database import Database
 
 STANDING = "(act IS NULL OR act NOT IN (SELECT act FROM fallen_act))"
@@ -90,6 +91,19 @@ def verdicts(record: Database) -> list[Verdict]:
         Verdict(a, b, PairAnswer(answer) if b else PhotoAnswer(answer), annotator, at, shown)
         for a, b, answer, annotator, at, shown in rows
     ]
+
+
+def photo_verdicts(record: Database, photos: Sequence[str]) -> list[Verdict]:
+    """Of single photos, those about these."""
+    found = []
+    for some in batched_names(photos):
+        marks = ", ".join("?" * len(some))
+        found += record.rows(
+            f"""SELECT id, photo_a, answer, annotator, at, shown FROM verdict
+                WHERE photo_b = '' AND photo_a IN ({marks}) AND {STANDING}""",
+            some,
+        )
+    return [Verdict(photo, "", PhotoAnswer(answer), *rest) for _, photo, answer, *rest in sorted(found)]
 
 
 def echo_verdicts(record: Database) -> list[EchoVerdict]:

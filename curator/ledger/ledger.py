@@ -231,6 +231,10 @@ class Ledger:
         """The verdicts that were not taken back, in the order in which they were taken in."""
         return _acts.verdicts(self._record)
 
+    def photo_verdicts_of(self, photos: Sequence[str]) -> list[Verdict]:
+        """The verdicts on these single photos that were not taken back; quick however many there are on others."""
+        return _acts.photo_verdicts(self._record, photos)
+
     def echo_verdicts(self) -> list[EchoVerdict]:
         """What people said of echoes and did not take back, in the order in which they said it."""
         return _acts.echo_verdicts(self._record)

@@ -123,12 +123,12 @@ class IdentitySheet:
 def identity_sheet(ledger: Ledger, identity: str, *, progress: Progress) -> IdentitySheet:
     """The photos of one identity and the identities most like it. Loads no more of the roll than these."""
     names, crowd = _crowd(ledger, progress)
-    photos = _sheet_photos(ledger, identity)
+    photos = sheet_photos(ledger, identity)
     near: list[NearIdentity] = []
     if identity in names and crowd.counts[names.index(identity)]:
         places, similarity = nearest_identities(crowd, names.index(identity))
         for place, alike in zip(places.tolist(), similarity.tolist(), strict=True):
-            face = _sheet_photos(ledger, names[place])[0]
+            face = sheet_photos(ledger, names[place])[0]
             near.append(NearIdentity(names[place], round(alike, 4), face.name, face.digest))
     return IdentitySheet(identity, photos, tuple(near))
 
@@ -140,7 +140,8 @@ def spread(ledger: Ledger, *, progress: Progress) -> dict[str, float]:
     return {name: round(value, 4) for name, value in zip(names, values.tolist(), strict=True) if value == value}
 
 
-def _sheet_photos(ledger: Ledger, identity: str) -> tuple[SheetPhoto, ...]:
+def sheet_photos(ledger: Ledger, identity: str) -> tuple[SheetPhoto, ...]:
+    """The photos of one identity from most to least typical, without the others it is near to."""
     rows = ledger.photos_of(identity)
     readings = ledger.readings_of([digest for _, digest in rows if digest])
     attributes = ledger.attributes_of([name for name, _ in rows])
@@ -162,11 +163,20 @@ def _sheet_photos(ledger: Ledger, identity: str) -> tuple[SheetPhoto, ...]:
     return tuple(photos)
 
 
+def knows_the_crowd(ledger: Ledger) -> bool:
+    """Whether `identity_sheet` and `spread` will answer at once: the identities have been looked over in brief."""
+    return ledger.array("crowd", _crowd_key(ledger)) is not None
+
+
+def _crowd_key(ledger: Ledger) -> str:
+    return f"{_CROWD} {ledger.roll_stamp()}"
+
+
 def _crowd(ledger: Ledger, progress: Progress) -> tuple[list[str], Crowd]:
     """All identities in brief; kept in the ledger until the roll or what made its readings changes."""
     counts = ledger.identity_counts()
     names = [name for name, _ in counts]
-    key = f"{_CROWD} {ledger.roll_stamp()}"
+    key = _crowd_key(ledger)
     kept = ledger.array("crowd", key)
     if kept is not None and len(kept) == len(names):
         return names, Crowd.unpacked(kept)

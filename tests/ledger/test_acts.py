@@ -177,3 +177,16 @@ def test_the_stamp_changes_with_the_roll_and_with_what_read_it(
         ledger.put_verdicts([_verdict(1)])
     assert len(set(stamps)) == 4
     assert ledger.roll_stamp() == stamps[-1]
+
+
+def test_the_verdicts_on_a_few_photos_are_those_among_all(ledger: Ledger) -> None:
+    pair = Verdict("a/1.jpg", "a/2.jpg", PairAnswer.SAME, "ada", _AT)
+    with ledger.writing():
+        ledger.put_act("said", annotator="ada", verdicts=[pair, *(_verdict(n) for n in range(1, 40))])
+        fallen = ledger.put_act("said more", annotator="ada", verdicts=[_verdict(50)])
+        assert fallen is not None
+        ledger.take_back(fallen.number)
+    asked = ["a/1.jpg", "a/7.jpg", "a/50.jpg", "b/1.jpg"]
+    slow = [v for v in ledger.verdicts() if not v.photo_b and v.photo_a in asked]
+    assert ledger.photo_verdicts_of(asked) == slow
+    assert len(slow) == 2
