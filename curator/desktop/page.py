@@ -75,6 +75,16 @@ class Page(QWidget):
         self.addAction(action)
         return made
 
+    def switch(
+        self, button: QAbstractButton, name: str, keys: str | Sequence[str], changed: Callable[[], None]
+    ) -> None:
+        """Make a button a switch with keys of its own; `changed` hears of each turn."""
+        button.setCheckable(True)
+        command = self.command(name, keys, button.click)
+        button.setToolTip(f"{name} ({shown_keys(command)})")
+        button.setAccessibleName(name)
+        button.toggled.connect(lambda _: changed())
+
     def bind(self, button: QAbstractButton, command: Command) -> None:
         """Let a button do a command, and say its key in the tooltip."""
         button.setToolTip(f"{command.name} ({shown_keys(command)})")

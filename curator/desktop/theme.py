@@ -80,12 +80,11 @@ def _sheet(p: Palette) -> str:
     QPushButton[voice="same"] {{ color: {p.same}; }}
     QPushButton[voice="different"] {{ color: {p.different}; }}
     QPushButton:checked, QToolButton:checked {{ background: {p.shade}; border-color: {p.accent}; }}
-    QLineEdit, QComboBox, QSpinBox, QDoubleSpinBox, QPlainTextEdit, QTextEdit, QListView, QTreeView, QTableView {{
+    QLineEdit, QPlainTextEdit, QTextEdit, QListView, QTreeView, QTableView {{
         background: {p.leaf}; border: 1px solid {p.line}; border-radius: 6px; padding: 3px 6px;
         selection-background-color: {p.accent}; selection-color: {p.on_accent};
     }}
-    QLineEdit:focus, QComboBox:focus, QSpinBox:focus, QDoubleSpinBox:focus, QPlainTextEdit:focus,
-    QListView:focus, QTreeView:focus, QTableView:focus {{ border-color: {p.accent}; }}
+    QLineEdit:focus, QPlainTextEdit:focus, QListView:focus, QTreeView:focus, QTableView:focus {{ border-color: {p.accent}; }}
     QListView, QTreeView, QTableView {{ outline: 0; }}
     QListView::item, QTreeView::item, QTableView::item {{ padding: 4px 6px; }}
     QListView::item:hover, QTreeView::item:hover {{ background: {p.shade}; }}

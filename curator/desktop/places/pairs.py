@@ -46,9 +46,9 @@ _ANSWERS = (
 _WORDS = {PairAnswer.SAME: "same", PairAnswer.DIFFERENT: "different", PairAnswer.CANNOT_TELL: "can't tell"}
 _LIMIT = 500
 _AHEAD = 4
-_SIDE = 210
+_SIDE = 190
+_STRIP = 68
 _CONTEXT = 12
-_TOO_MANY = 50_000
 
 
 class PairsPage(Page):
@@ -72,7 +72,6 @@ class PairsPage(Page):
         self.blind = QPushButton("Blind")
         self.values = QPushButton("Values")
         for button in (self.blind, self.values):
-            button.setCheckable(True)
             button.setFocusPolicy(Qt.FocusPolicy.TabFocus)
         self.pace = QLabel()
         self.pace.setProperty("voice", "muted")
@@ -82,11 +81,10 @@ class PairsPage(Page):
         self.why.setAlignment(Qt.AlignmentFlag.AlignHCenter)
         self.told = QLabel()
         self.told.setProperty("voice", "muted")
-        self.told.setAlignment(Qt.AlignmentFlag.AlignHCenter)
         view = View()
         self.panes = [PhotoPane(desk, view), PhotoPane(desk, view)]
         self.captions = [QLabel(), QLabel()]
-        self.context = [StripOfPhotos(desk), StripOfPhotos(desk)]
+        self.context = [StripOfPhotos(desk, _STRIP), StripOfPhotos(desk, _STRIP)]
         self.given = QListWidget()
         self.given.setFixedWidth(_SIDE)
         self.given.setAccessibleName("Verdicts of this sitting")
@@ -129,6 +127,8 @@ class PairsPage(Page):
         for widget in (self.order, self.blind, self.values):
             top.addWidget(widget)
         top.addStretch(1)
+        top.addWidget(self.told)
+        top.addStretch(1)
         top.addWidget(self.pace)
         photos = QHBoxLayout()
         photos.setSpacing(16)
@@ -149,7 +149,6 @@ class PairsPage(Page):
         middle = QVBoxLayout()
         middle.addLayout(top)
         middle.addWidget(self.why)
-        middle.addWidget(self.told)
         middle.addLayout(photos, 1)
         middle.addWidget(self.which)
         middle.addLayout(answers)
@@ -167,8 +166,8 @@ class PairsPage(Page):
     def _keys(self) -> None:
         self.command("Pass to the next pair", "Right", lambda: self._step(1))
         self.command("Back to the pair before", "Left", lambda: self._step(-1))
-        self.bind(self.blind, self.command("Read blind: hide names and context", "B", self._toggle_blind))
-        self.bind(self.values, self.command("Show similarity and trust", "V", self._toggle_values))
+        self.switch(self.blind, "Read blind: hide names and context", "B", self._show)
+        self.switch(self.values, "Show similarity and trust", "V", self._show)
         self.command("The next order", "O", self._next_order)
         self.command("Enlarge both photos", ("+", "="), lambda: self.panes[0].view.zoom_by(1.25))
         self.command("Make both photos smaller", "-", lambda: self.panes[0].view.zoom_by(0.8))
@@ -289,17 +288,6 @@ class PairsPage(Page):
     def _reopen(self, item: QListWidgetItem) -> None:
         self.sitting.reopen(self.given.row(item))
         self.setFocus()
-        self._show()
-
-    def _toggle_blind(self) -> None:
-        # A click has toggled the button already, a key has not.
-        if self.sender() is not self.blind:
-            self.blind.toggle()
-        self._show()
-
-    def _toggle_values(self) -> None:
-        if self.sender() is not self.values:
-            self.values.toggle()
         self._show()
 
     def _next_order(self) -> None:
