@@ -1,6 +1,7 @@
 """The window without a screen, with settings of its own, and a small ledger."""
 
 import os
+import shutil
 from collections.abc import Callable
 from pathlib import Path
 
@@ -10,6 +11,8 @@ from PIL import Image
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 
+from curator.doubts.step import find_doubts
+from curator.echoes.step import find_echoes
 from curator.intake.step import run
 from curator.ledger import Ledger
 from curator.progress import Silent
@@ -47,12 +50,20 @@ def desk_root(_drawn_root: Path) -> Path:
     return _drawn_root
 
 
-@pytest.fixture
-def desk_ledger(tmp_path: Path, _drawn_root: Path) -> Path:
-    """The ledger of that root, framed whole."""
-    with Ledger.create(tmp_path / "ledger", _drawn_root) as opened:
+@pytest.fixture(scope="session")
+def _read_once(tmp_path_factory: pytest.TempPathFactory, _drawn_root: Path) -> Path:
+    folder = tmp_path_factory.mktemp("read") / "ledger"
+    with Ledger.create(folder, _drawn_root) as opened:
         run(_drawn_root, opened, framing="whole", workers=1, progress=Silent())
-    return tmp_path / "ledger"
+        find_echoes(opened, progress=Silent())
+        find_doubts(opened, progress=Silent())
+    return folder
+
+
+@pytest.fixture
+def desk_ledger(tmp_path: Path, _read_once: Path) -> Path:
+    """A ledger of that root, framed whole, looked over once; each test has a copy."""
+    return Path(shutil.copytree(_read_once, tmp_path / "ledger"))
 
 
 @pytest.fixture
