@@ -18,6 +18,7 @@ import sys
 import tempfile
 import time
 from collections.abc import Callable
+from itertools import pairwise
 from pathlib import Path
 from typing import Any
 
@@ -120,7 +121,7 @@ def held(ledger: Path, _began: float) -> dict[str, float]:
     timer.start(_BEAT_MS)
     window.desk.start("Reading photos", lambda opened_, progress: run(root, opened_, progress=progress))
     until(application, lambda: not window.desk.work.busy, 600)
-    gaps = [1000 * (b - a) for a, b in zip(beats, beats[1:], strict=False)]
+    gaps = [1000 * (b - a) for a, b in pairwise(beats)]
     photos = sum(count for _, count in window.desk.ledger.identity_counts())
     window.desk.close()
     return {"held_ms": max(gaps), "p99_ms": percentile(gaps, 0.99), "photos": photos}
