@@ -221,7 +221,9 @@ class RollPage(Page):
             return
         self.desk.memory.put("roll/identity", identity)
         entry = self.people.model.entry(row)
-        photos = sheet_photos(ledger, identity) if entry.photos <= _AT_ONCE else _by_name(ledger, identity)
+        # On a large roll even a few photos may lie anywhere on the disk.
+        at_once = entry.photos <= _AT_ONCE and not self._is_large
+        photos = sheet_photos(ledger, identity) if at_once else _by_name(ledger, identity)
         self.view.show_photos(entry, photos, self._known)
         self.view.wait_for_near(unknown=False)
         self._pause.start()
