@@ -2,21 +2,24 @@
 
 from __future__ import annotations
 
-from collections import Counter
+from collections import Counter, defaultdict
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 from enum import StrEnum
+from itertools import islice
 
 import numpy as np
 
 from curator.domain import Doubt, DoubtKind, EchoGroup, Ints, PhotoAnswer, Roll
-from curator.pairs.mining import Mined, hard_mated, hard_non_mated
+from curator.pairs.mining import hard_mated, hard_non_mated
 from curator.pairs.similarity import between
 from curator.pairs.trust import TrustModel
 from curator.verdicts import Settled, pair_key
 
-_OVER = 3
-"""Pairs mined for each question wanted: some are answered, set aside, or copies."""
+_POOL = 3
+"""Pairs mined for each question wanted where the least trusted among them are asked."""
+_MOST_SEARCHED = 8_000
+"""Photos whose nearest strangers are looked for, all with all; of more, only those most like strangers."""
 
 
 class Order(StrEnum):
@@ -58,10 +61,16 @@ class Matter:
     """Places along the roll of the photos that may be asked about, ascending."""
     doubts: tuple[Doubt, ...]
     settled: Settled
-    same_shot: Mapping[str, str]
-    """Photo to the echo group it is in."""
+    same_shot: Mapping[str, frozenset[str]]
+    """Photo to the echo groups it is in: one of copies at most, and any number of bursts."""
     answered: bool
     """Ask pairs with a standing verdict too."""
+
+    def may_ask(self, a: str, b: str) -> bool:
+        """Whether two photos are a pair worth a person's time: not of one shot, and not answered yet."""
+        if a == b or self.same_shot.get(a, frozenset()) & self.same_shot.get(b, frozenset()):
+            return False
+        return self.answered or pair_key(a, b) not in self.settled.pairs
 
 
 def matter_of(
@@ -77,7 +86,11 @@ def matter_of(
     """The matter for questions: photos that people set aside or moved away are not asked about."""
     gone = {photo for photo, answer in settled.photos.items() if answer != PhotoAnswer.BELONGS}
     photos = np.array([i for i in embedded if roll.photos[i] not in gone], dtype=np.int64)
-    same_shot = {photo: group.id for group in echoes for photo in group.photos}
+    groups: dict[str, set[str]] = defaultdict(set)
+    for group in echoes:
+        for photo in group.photos:
+            groups[photo].add(group.id)
+    same_shot = {photo: frozenset(ids) for photo, ids in groups.items()}
     return Matter(roll, trust, photos, doubts, settled, same_shot, answered)
 
 
@@ -86,10 +99,7 @@ def questions(matter: Matter, order: Order, limit: int, rng: np.random.Generator
     found = _FINDERS[order](matter, limit, rng)
     kept: dict[tuple[str, str], Question] = {}
     for question in found:
-        if question.photo_a == question.photo_b or not (question.open or matter.answered):
-            continue
-        shot = matter.same_shot.get(question.photo_a)
-        if shot is not None and shot == matter.same_shot.get(question.photo_b):
+        if not matter.may_ask(question.photo_a, question.photo_b):
             continue
         key = pair_key(question.photo_a, question.photo_b)
         if key not in kept or question.gain > kept[key].gain:
@@ -124,25 +134,61 @@ def _varied(found: list[Question]) -> list[Question]:
 
 def _most_informative(matter: Matter, limit: int, _: np.random.Generator) -> list[Question]:
     found = _of_doubts(matter)
-    for mined, label in ((_mined(matter, hard_mated, limit), 1), (_mined(matter, hard_non_mated, limit), 0)):
+    for label in (1, 0):
         why = (
             "Filed under one name, yet these two look unlike."
             if label
             else "Filed under two names, yet these two look alike."
         )
-        found += _asked(matter, *mined[:2], label, why)
+        found += _asked(matter, *_mined(matter, label, limit * _POOL), label, why)
     return found
 
 
-def _hardest(mine: Callable[..., Mined], label: int, why: str) -> Callable[..., list[Question]]:
+def _hardest(label: int, why: str) -> Callable[..., list[Question]]:
     def found(matter: Matter, limit: int, _: np.random.Generator) -> list[Question]:
-        return _asked(matter, *_mined(matter, mine, limit)[:2], label, why)
+        return _asked(matter, *_mined(matter, label, limit), label, why)
 
     return found
 
 
-def _mined(matter: Matter, mine: Callable[..., Mined], limit: int) -> Mined:
-    return mine(matter.trust.embeddings, matter.photos, matter.roll.identity_of, limit * _OVER)
+def _mined(matter: Matter, label: int, wanted: int) -> tuple[Ints, Ints]:
+    """The hardest `wanted` pairs that may be asked, hardest first.
+
+    As many more are mined as could have to be passed over, so that answers given never leave the desk empty.
+    """
+    sizes = Counter(group for groups in matter.same_shot.values() for group in groups)
+    passed_over = sum(n * (n - 1) // 2 for n in sizes.values())
+    if not matter.answered:
+        passed_over += len(matter.settled.pairs)
+    mine, photos = (hard_mated, matter.photos) if label else (hard_non_mated, _searched(matter))
+    i, j, _ = mine(matter.trust.embeddings, photos, matter.roll.identity_of, wanted + passed_over)
+    names = matter.roll.photos
+    pairs = zip(i.tolist(), j.tolist(), strict=True)
+    chosen = np.array(
+        list(islice((pair for pair in pairs if matter.may_ask(names[pair[0]], names[pair[1]])), wanted)),
+        dtype=np.int64,
+    ).reshape(-1, 2)
+    return chosen[:, 0], chosen[:, 1]
+
+
+def _searched(matter: Matter) -> Ints:
+    """The photos among which like strangers are looked for: all, or of many those likeliest to have one.
+
+    Half are the photos most like another identity. The others are what these may be like: the most typical photos of
+    those identities, which need not look like strangers themselves.
+    """
+    photos, trust = matter.photos, matter.trust
+    if len(photos) <= _MOST_SEARCHED:
+        return photos
+    alike = np.nan_to_num(trust.nearest_similarity[photos], nan=-np.inf)
+    order = photos[np.argsort(-alike, kind="stable")]
+    leading, rest = order[: _MOST_SEARCHED // 2], order[_MOST_SEARCHED // 2 :]
+    turn = np.full(len(trust.core.counts) + 1, len(photos))
+    # Photos that are near no identity hold -1, and so take their turn at the spare last place.
+    np.minimum.at(turn, trust.nearest[leading], np.arange(len(leading)))
+    own = np.nan_to_num(trust.own[rest], nan=-np.inf)
+    met = rest[np.lexsort((-own, turn[matter.roll.identity_of[rest]]))]
+    return np.sort(np.concatenate([leading, met[: _MOST_SEARCHED - len(leading)]]))
 
 
 def _random(matter: Matter, limit: int, rng: np.random.Generator) -> list[Question]:
@@ -262,7 +308,7 @@ class _Typical:
 
 _FINDERS: Mapping[Order, Callable[[Matter, int, np.random.Generator], list[Question]]] = {
     Order.MOST_INFORMATIVE: _most_informative,
-    Order.HARDEST_MATED: _hardest(hard_mated, 1, "One of the mated pairs that look least alike."),
-    Order.HARDEST_NON_MATED: _hardest(hard_non_mated, 0, "One of the non-mated pairs that look most alike."),
+    Order.HARDEST_MATED: _hardest(1, "One of the mated pairs that look least alike."),
+    Order.HARDEST_NON_MATED: _hardest(0, "One of the non-mated pairs that look most alike."),
     Order.RANDOM: _random,
 }

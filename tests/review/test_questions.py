@@ -2,19 +2,22 @@
 
 from collections import Counter
 from collections.abc import Callable
+from typing import Any
 
 import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from curator.domain import EchoGroup, PairAnswer, PhotoAnswer, Scope, Verdict
+from curator.domain import EchoGroup, PairAnswer, PhotoAnswer, Roll, Scope, Verdict
 from curator.ledger import Ledger
 from curator.pairs.similarity import between
+from curator.pairs.trust import fit_trust
 from curator.progress import Silent
-from curator.review.questions import Order, Question, _mated_sample, _varied
+from curator.review.questions import Order, Question, _mated_sample, _searched, _varied, matter_of
+from curator.review.questions import questions as ask
 from curator.review.step import questions
-from curator.verdicts import pair_key
+from curator.verdicts import pair_key, settle
 
 AT = "2026-05-01T10:00:00+00:00"
 MadeLedger = Callable[..., Ledger]
@@ -97,6 +100,54 @@ def test_two_copies_of_one_shot_are_not_asked(made_ledger: MadeLedger, monkeypat
         monkeypatch.setattr("curator.review.step.find_echoes", lambda *_, **__: (group,))
         later = questions(ledger, Order.HARDEST_MATED, limit=50, progress=Silent())
     assert pair_key(first.photo_a, first.photo_b) not in {pair_key(q.photo_a, q.photo_b) for q in later}
+
+
+def test_copies_are_known_though_one_of_them_is_in_a_burst_too(
+    made_ledger: MadeLedger, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    with made_ledger() as ledger:
+        first = questions(ledger, Order.HARDEST_MATED, limit=5, progress=Silent())[0]
+        other = next(p for p in ledger.roll().photos if p not in (first.photo_a, first.photo_b))
+        pairs = [(first.photo_a, first.photo_b), (first.photo_a, other)]
+        groups = tuple(EchoGroup(f"e-{k}", Scope.WITHIN_IDENTITY, pair, (), pair[0]) for k, pair in enumerate(pairs))
+        monkeypatch.setattr("curator.review.step.find_echoes", lambda *_, **__: groups)
+        later = questions(ledger, Order.HARDEST_MATED, limit=50, progress=Silent())
+    asked = {pair_key(q.photo_a, q.photo_b) for q in later}
+    assert not asked & {pair_key(*pair) for pair in pairs}
+
+
+def test_answers_given_never_leave_the_desk_empty(made_ledger: MadeLedger) -> None:
+    met: set[tuple[str, str]] = set()
+    with made_ledger(people=4) as ledger:
+        for _ in range(20):
+            asked = questions(ledger, Order.HARDEST_MATED, limit=5, progress=Silent())
+            met |= {pair_key(q.photo_a, q.photo_b) for q in asked}
+            with ledger.writing():
+                ledger.put_verdicts([Verdict(q.photo_a, q.photo_b, PairAnswer.CANNOT_TELL, "ada", AT) for q in asked])
+    # 4 people of 6 photos have 4 * 15 mated pairs: all are asked in the end.
+    assert len(met) == 60
+
+
+def test_a_search_of_few_photos_finds_what_a_search_of_all_finds(
+    crowd: Callable[..., Any], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    made = crowd([10] * 40, seed=3)
+    # Three photos lie in a stranger's folder: the hardest non-mated pairs are theirs.
+    folder = made.folder.copy()
+    folder[[5, 105, 205]] = [30, 31, 32]
+    n = len(folder)
+    names = tuple(f"{k:02d}" for k in range(40))
+    photos = tuple(f"{k:02d}/{i}" for i, k in enumerate(folder))
+    trust = fit_trust(made.embeddings, np.ones(n, dtype=bool), folder, 40, pair_answers={}, photo_answers={}, seed=1)
+    matter = matter_of(Roll(photos, ("",) * n, names, folder, {}), trust, range(n), (), (), settle([]))
+    rng = np.random.default_rng(0)
+    whole = ask(matter, Order.HARDEST_NON_MATED, 25, rng)
+    monkeypatch.setattr("curator.review.questions._MOST_SEARCHED", 100)
+    assert len(set(_searched(matter).tolist())) == 100
+    few = ask(matter, Order.HARDEST_NON_MATED, 25, rng)
+    strays = {photos[5], photos[105], photos[205]}
+    assert all({q.photo_a, q.photo_b} & strays for q in whole)
+    assert len(set(few) & set(whole)) >= 20
 
 
 @given(st.lists(st.integers(1, 7), min_size=1, max_size=6), st.integers(0, 99))
