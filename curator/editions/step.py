@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 from collections import Counter
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
@@ -15,7 +16,7 @@ from curator.doubts.step import find_doubts
 from curator.echoes.step import find_echoes
 from curator.editions.assembling import asked_rows, assemble
 from curator.editions.audit import audit_path
-from curator.editions.audit_report import AuditReport
+from curator.editions.audit_report import AuditReport, Fault
 from curator.editions.bag import check_target, write_bag
 from curator.editions.exclusions import left_out, usable
 from curator.editions.material import Lists, Material
@@ -115,6 +116,29 @@ def audit(path: Path, *, photos: Path | None = None, ledger: Ledger | None = Non
         progress.advance()
 
     return audit_path(path, photos=photos, echoes=known, looked=looked)
+
+
+def audit_edition(ledger: Ledger, number: int, *, progress: Progress) -> AuditReport:
+    """Audit an edition that the ledger notes: its files, its photos where they are, the echoes of now, its digest.
+
+    Raises `BadInput` where there is no such edition or its folder is gone, `Stopped`.
+    """
+    noted = next((row for row in ledger.editions() if row.number == number), None)
+    if noted is None:
+        raise BadInput(f"The ledger {ledger.path} notes no edition {number}.")
+    path, root = Path(noted.path), ledger.photo_root
+    if not path.is_dir():
+        raise BadInput(f"{path} is no longer there; edition {number} was moved or deleted.")
+    report = audit(path, photos=root if root.is_dir() else None, ledger=ledger, progress=progress)
+    manifest = path / "manifest-sha256.txt"
+    try:
+        digest = hashlib.sha256(manifest.read_bytes()).hexdigest()
+    except OSError:
+        digest = ""
+    if digest != noted.data_digest:
+        # Files that were changed together with their manifest agree with one another, but not with the ledger.
+        report.faults.append(Fault("not-as-written", f"the manifest is not that of edition {number}", (str(manifest),)))
+    return report
 
 
 @dataclass(frozen=True)

@@ -168,15 +168,15 @@ def test_recipes_are_opened_saved_and_remembered_with_their_ledger(
     told.write_text(text)
     monkeypatch.setattr(QFileDialog, "getOpenFileName", lambda *_: (str(told), ""))
     monkeypatch.setattr(QFileDialog, "getSaveFileName", lambda *_: (str(saved), ""))
-    qtbot.keyClick(page, Key.Key_R)
+    qtbot.keyClick(page, Key.Key_O)
     assert _edit(page, "seed").text() == "23"
-    qtbot.keyClick(page, Key.Key_W)
+    qtbot.keyClick(page, Key.Key_S)
     assert parse_recipe(saved.read_text()) == parse_recipe(text)
     assert saved.stat().st_mode & 0o777 == 0o600
 
     told.write_text(text.replace("[folds]", "[fold]"))
     with qtbot.waitSignal(window.desk.complained) as heard:
-        qtbot.keyClick(page, Key.Key_R)
+        qtbot.keyClick(page, Key.Key_O)
     assert heard.args == [f"'fold' in {told} is not known."]
     assert _edit(page, "seed").text() == "23"
 

@@ -65,10 +65,10 @@ class SplitsPage(Page):
         self.bind(self.look, self.command("Audit the split in force for leaks", "L", self._look))
         self.ask = QPushButton("Ask about these in Pairs   A")
         self.bind(self.ask, self.command("Ask about the ties of this group in Pairs", "A", self._ask))
-        self.load = QPushButton("Open   R")
-        self.bind(self.load, self.command("Open a recipe", "R", self.form.open_file))
-        self.keep = QPushButton("Save   W")
-        self.bind(self.keep, self.command("Save the recipe", "W", self.form.save_file))
+        self.load = QPushButton("Open   O")
+        self.bind(self.load, self.command("Open a recipe", "O", self.form.open_file))
+        self.keep = QPushButton("Save   S")
+        self.bind(self.keep, self.command("Save the recipe", "S", self.form.save_file))
         for button in (self.plan, self.force, self.look, self.ask, self.load, self.keep):
             button.setAutoDefault(True)  # so that Enter presses it
 

@@ -172,7 +172,7 @@ class TwoSided(_Chart):
         self._told(told)
 
     def sizeHint(self) -> QSize:  # noqa: N802 - Qt's own name
-        return QSize(360, int(self._line * 9))
+        return QSize(360, int(self._line * 11))
 
     def minimumSizeHint(self) -> QSize:  # noqa: N802 - Qt's own name
         return QSize(200, self.sizeHint().height())
