@@ -7,7 +7,6 @@ Definitions: DCT hash (`phash`): 32 x 32 grey by Lanczos, two DCTs, the low 8 x 
 from __future__ import annotations
 
 import numpy as np
-import scipy.fftpack
 from PIL import Image, ImageOps
 
 from curator.domain import Bools
@@ -33,8 +32,10 @@ def reduced(grey: Image.Image) -> Image.Image:
 def dct_hash(grey: Image.Image) -> int:
     """64-bit DCT hash of a grey (mode L) picture, reduced or not."""
     pixels = np.asarray(reduced(grey))
+    from scipy.fftpack import dct  # slow to load, and only reading processes need it
+
     # The package imagehash uses, in the same order: a matrix product differs on flat and gradient pictures.
-    low = scipy.fftpack.dct(scipy.fftpack.dct(pixels, axis=0), axis=1)[:_SIDE, :_SIDE]
+    low = dct(dct(pixels, axis=0), axis=1)[:_SIDE, :_SIDE]
     return packed(low > np.median(low))
 
 

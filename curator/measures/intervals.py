@@ -4,8 +4,6 @@ from __future__ import annotations
 
 import math
 
-from scipy.stats import beta, norm
-
 Interval = tuple[float, float]
 
 
@@ -14,6 +12,8 @@ def wilson(k: int, n: int, confidence: float = 0.95) -> Interval:
     _check(k, n)
     if n == 0:
         return 0.0, 1.0
+    from scipy.stats import norm  # slow to load, as below
+
     z = float(norm.ppf(0.5 + confidence / 2))
     p = k / n
     middle = (p + z * z / (2 * n)) / (1 + z * z / n)
@@ -25,6 +25,8 @@ def clopper_pearson(k: int, n: int, confidence: float = 0.95) -> Interval:
     """The exact interval of Clopper and Pearson (1934). (0, 1) for no trials."""
     _check(k, n)
     tail = (1 - confidence) / 2
+    from scipy.stats import beta
+
     low = 0.0 if k == 0 else float(beta.ppf(tail, k, n - k + 1))
     high = 1.0 if k == n else float(beta.ppf(1 - tail, k + 1, n - k))
     return low, high

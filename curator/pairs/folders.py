@@ -6,7 +6,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from sklearn.cluster import AgglomerativeClustering
 
 from curator.domain import Bools, Ints
 from curator.pairs.similarity import Centres, among_groups, centres, to_groups, to_own
@@ -144,6 +143,8 @@ def divide(embeddings: NDArray[np.float32], photos: Ints, fit: Normals) -> Divis
     x = embeddings[chosen]
     for n_parts in range(2, min(_MOST_PARTS, len(chosen)) + 1):
         # A stray photo or two part from the rest first: the two people then show among more parts.
+        from sklearn.cluster import AgglomerativeClustering  # takes a second to load: not before it is needed
+
         label = AgglomerativeClustering(n_clusters=n_parts, linkage="average").fit_predict(x)
         sizes = np.bincount(label, minlength=n_parts)
         largest = np.sort(np.argsort(-sizes, kind="stable")[:2])

@@ -15,7 +15,6 @@ from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
-from sklearn.linear_model import LogisticRegression
 
 from curator.domain import Bools, Ints
 from curator.pairs.folders import Division, Normals, divisions, fit_folders, near_folders, share_twice, to_own_part
@@ -58,6 +57,8 @@ def fit_logistic(same: _Reals, different: _Reals) -> Logistic:
     values = np.concatenate([same, different])
     centre, spread = float(values.mean()), float(values.std()) or 1.0
     labels = np.repeat([1, 0], [len(same), len(different)])
+    from sklearn.linear_model import LogisticRegression  # takes a second to load: the window opens without it
+
     model = LogisticRegression(class_weight="balanced", C=10.0).fit(((values - centre) / spread)[:, None], labels)
     slope = float(model.coef_[0, 0]) / spread
     if slope <= 0:
