@@ -112,10 +112,12 @@ class RollPage(Page):
 
     def ledger_opened(self) -> None:
         self._known, self._stale, self._looked = Look(), True, False
-        self.view.clear()
-        self.people.put([], {})
         ledger = self.desk.ledger
-        self._path = ledger.path if ledger is not None else None
+        path = ledger.path if ledger is not None else None
+        if path != self._path:  # the same one, read again, stays in view until its new roll is there
+            self.view.clear()
+            self.people.put([], {})
+        self._path = path
         self.desk.start("Calling the roll", lambda lg, _: _rows(lg), self._put_roll, key="roll list")
 
     def something_said(self) -> None:

@@ -107,7 +107,7 @@ class RollIdentity(QWidget):
         """Show an identity with its nearest others."""
         self.show_photos(entry, sheet.photos, known)
         self._nearest = sheet.nearest
-        self.near.put([Leaf(near.photo, near.digest, near.name, f"{near.similarity:.2f}") for near in sheet.nearest])
+        self.near.put([_face(near) for near in sheet.nearest])
         self._tell_near("nearest others" if sheet.nearest else "no others known")
 
     def wait_for_near(self, *, unknown: bool) -> None:
@@ -173,3 +173,8 @@ def _muted() -> QLabel:
     label = QLabel()
     label.setProperty("voice", "muted")
     return label
+
+
+def _face(near: NearIdentity) -> Leaf:
+    # The room is narrow: of a name with folders its end tells most, and the tooltip all.
+    return Leaf(near.photo, near.digest, near.name.rpartition("/")[2], f"{near.similarity:.2f}", (), near.name)

@@ -82,6 +82,7 @@ class RollList(QWidget):
 
     def put(self, counts: list[tuple[str, int]], attributes: dict[str, dict[str, int]]) -> None:
         """Show another roll."""
+        self._present = ""
         self.model.put(counts)
         self._among = None
         self.attribute.clear()
