@@ -269,6 +269,8 @@ class EchoGroup:
     photos: tuple[str, ...]
     links: tuple[EchoLink, ...]
     suggested_keep: str
+    settled: bool = False
+    """People have said what becomes of it."""
 
 
 @dataclass(frozen=True)

@@ -1,4 +1,4 @@
-"""Which pairs of photos are worth registering: near in a hash, in the mirror hash, or in the embedding."""
+"""Which pairs of photos are worth registering: near in a hash, in the embedding, or like a window of each other."""
 
 from __future__ import annotations
 
@@ -9,16 +9,17 @@ import numpy as np
 from numpy.typing import NDArray
 
 from curator.domain import Codes, Ints, Readings
+from curator.echoes.windows import like_windows
 from curator.neighbours.codes import gathered, within
 from curator.neighbours.nearest import nearest
 
 _RADIUS = 10
 """Bits. Re-encoded, resized, toned and blurred copies lie within 4; chance pairs stay rare to a million photos."""
-_NEAREST = 3
+_NEAREST = 2
 """Embedding neighbours, of the own identity and of others apart: a crop keeps its face, whatever its hash does."""
 _MOST_OF_ONE_CODE = 3
 """Photos that share one code exactly are chained, each with so many that follow it, not paired all with all."""
-_MOST_OF_ONE_PHOTO = 12
+_MOST_OF_ONE_PHOTO = 6
 """Pairs that a hash may bring to a photo, the nearest first: the shots of one person lie within the radius by scores,
 and a folder of a thousand would bring a hundred thousand pairs."""
 _FLAT = 4.0
@@ -35,12 +36,15 @@ class Candidates:
     """Files of the same bytes, flat ones too: nothing is left to settle."""
     straight: Pairs
     mirrored: Pairs
-    """Brought together by the mirror hash."""
+    """Brought together by the mirror hash or a mirrored window."""
 
 
-def candidates(readings: Readings, identity_of: Ints, digests: Sequence[str]) -> Candidates:
+def candidates(
+    readings: Readings, identity_of: Ints, digests: Sequence[str], small: NDArray[np.uint8] | None = None
+) -> Candidates:
     """All candidate pairs. Of files with the same bytes in one identity the first stands for all, and flat pictures
-    are among the identical only."""
+    are among the identical only. `small` (n, 32, 32) are the photos as `curator.echoes.windows` has them; without
+    them no windows are looked at."""
     readable = np.flatnonzero(readings.width > 0)
     _, content = np.unique(np.array(digests)[readable], return_inverse=True)
     identical = _identical(readable, content, identity_of[readable])
@@ -49,11 +53,14 @@ def candidates(readings: Readings, identity_of: Ints, digests: Sequence[str]) ->
     fine = fine[np.nan_to_num(readings.contrast[fine]) >= _FLAT]
     straight = [_by_code(codes[fine]) for codes in (readings.dct, readings.difference)]
     straight.append(_by_embedding(readings, identity_of, fine))
-    mirrored = _by_mirror(readings.mirror[fine], readings.dct[fine])
+    mirrored = [_by_mirror(readings.mirror[fine], readings.dct[fine])]
+    if small is not None:
+        for pairs, found in zip((straight, mirrored), like_windows(small[fine], identity_of[fine]), strict=True):
+            pairs.append(found)
     return Candidates(
         identical,
         _distinct(fine[np.concatenate(straight)], digests),
-        _distinct(fine[mirrored], digests),
+        _distinct(fine[np.concatenate(mirrored)], digests),
     )
 
 

@@ -18,10 +18,12 @@ from PIL import Image, ImageOps
 
 from curator.domain import Change, EchoGroup, EchoLink, Readings, Roll
 from curator.echoes import registration
+from curator.echoes.answers import set_aside, standing, still_links, with_answers
 from curator.echoes.candidates import Candidates, candidates
 from curator.echoes.groups import group
 from curator.echoes.people import SamePerson, same_people
 from curator.echoes.settlement import Facts, settled_change
+from curator.echoes.windows import SMALL
 from curator.errors import BadInput
 from curator.intake.step import run as run_intake
 from curator.intake.walking import walk
@@ -49,7 +51,13 @@ def find_echoes(ledger: Ledger, *, progress: Progress) -> tuple[EchoGroup, ...]:
             ledger.put_finding("echo-links", key, [asdict(link) for link in links])
     else:
         links = [_from_document(row) for row in known]
-    return group(links, roll, readings, split_of)
+    answers = standing(ledger.echo_verdicts())
+    return with_answers(group(still_links(links, answers), roll, readings, split_of), answers)
+
+
+def photos_set_aside(ledger: Ledger) -> frozenset[str]:
+    """The photos that people set aside as echoes of others."""
+    return set_aside(standing(ledger.echo_verdicts()))
 
 
 def kept_links(ledger: Ledger) -> tuple[EchoLink, ...] | None:

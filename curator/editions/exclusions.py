@@ -20,7 +20,9 @@ _OF_PHOTOS = {
 }
 
 
-def left_out(roll: Roll, readings: Readings, doubts: Iterable[Doubt], settled: Settled) -> dict[int, str]:
+def left_out(
+    roll: Roll, readings: Readings, doubts: Iterable[Doubt], settled: Settled, aside: Iterable[str] = ()
+) -> dict[int, str]:
     """Place along the roll to the reason, for every photo that must not be used."""
     place = roll.index_of()
     reasons: dict[int, str] = {}
@@ -31,6 +33,9 @@ def left_out(roll: Roll, readings: Readings, doubts: Iterable[Doubt], settled: S
     for photo, answer in settled.photos.items():
         if photo in place and answer != PhotoAnswer.BELONGS:
             reasons[place[photo]] = f"verdict: {answer.value}"
+    for photo in aside:
+        if photo in place:
+            reasons.setdefault(place[photo], "set aside as an echo")
     for photo in settled.contested_photos:
         if photo in place:
             reasons[place[photo]] = "annotators disagree"

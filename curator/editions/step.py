@@ -13,7 +13,7 @@ from typing import Any
 from curator import __version__
 from curator.domain import Verdict
 from curator.doubts.step import find_doubts
-from curator.echoes.step import find_echoes
+from curator.echoes.step import find_echoes, photos_set_aside
 from curator.editions.assembling import asked_rows, assemble
 from curator.editions.audit import audit_path
 from curator.editions.audit_report import AuditReport, Fault
@@ -172,7 +172,7 @@ def _made(ledger: Ledger, recipe: Recipe, progress: Progress) -> _Made:
 def _material(ledger: Ledger, split: SplitReport, verdicts: list[Verdict], progress: Progress) -> Material:
     roll, readings, trust = load_trust(ledger, progress=progress)
     settled = settle(verdicts)
-    reasons = left_out(roll, readings, find_doubts(ledger, progress=progress), settled)
+    reasons = left_out(roll, readings, find_doubts(ledger, progress=progress), settled, photos_set_aside(ledger))
     for i, k in enumerate(roll.identity_of.tolist()):
         if roll.identities[k] not in split.assignment.split_of:
             reasons.setdefault(i, "tied to another split of the earlier edition")

@@ -11,8 +11,8 @@ from typing import Any
 import pyarrow.parquet
 import pytest
 
-from curator.domain import PairAnswer, PhotoAnswer, Verdict
-from curator.editions.step import audit, write_edition
+from curator.domain import EchoAnswer, EchoVerdict, PairAnswer, PhotoAnswer, Verdict
+from curator.editions.step import audit, plan_edition, write_edition
 from curator.errors import BadInput
 from curator.ledger import Ledger
 from curator.progress import Silent
@@ -199,3 +199,13 @@ def test_a_folder_that_is_no_text_is_refused_before_anything_is_written(
             _written(ledger, recipe_text, out)
         assert ledger.editions() == []
     assert not out.exists()
+
+
+def test_a_photo_set_aside_as_an_echo_stays_out(made_ledger: MadeLedger, recipe_text: str) -> None:
+    with made_ledger() as ledger:
+        kept, aside = [name for name, _ in ledger.photos_of(ledger.roll().identities[0])][:2]
+        with ledger.writing():
+            verdict = EchoVerdict(kept, aside, EchoAnswer.KEEP_FIRST, "ada", "2026-05-01T10:00:00+00:00")
+            ledger.put_act("kept one", annotator="ada", echo_verdicts=[verdict])
+        plan = plan_edition(ledger, parse_recipe(recipe_text), progress=Silent())
+    assert plan.left_out["set aside as an echo"] == (aside,)
