@@ -90,13 +90,15 @@ def _leaf(photo: SheetPhoto, answer: PhotoAnswer | None, known: Look) -> Leaf:
         hints.append(known.doubted[photo.name])
     if answer in (PhotoAnswer.UNUSABLE, PhotoAnswer.DOES_NOT_BELONG) or photo.name in known.aside:
         marks.append(Mark.ASIDE)
-    note = "" if photo.similarity is None else f"{photo.similarity:.2f}"
-    said = _SAID.get(answer, "") if answer is not None else photo.why or ""
+    if answer is not None:
+        note = _SAID[answer]
+    else:
+        note = photo.why or ("" if photo.similarity is None else f"{photo.similarity:.2f}")
     return Leaf(
         photo.name,
         photo.digest,
         photo.name.rpartition("/")[2],
-        " · ".join(part for part in (note, said) if part),
+        note,
         tuple(marks),
         "\n".join(hints),
     )

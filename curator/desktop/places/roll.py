@@ -73,7 +73,7 @@ class RollPage(Page):
             self._add_button(label, picture, command, needs=needs)
         self.view.buttons.addStretch(1)
         again = self.command("Read new and changed photos again", "Ctrl+R", self._read_again)
-        self._add_button("Read again", "recipe", again, needs=False)
+        self.bind(self.people.again, again)
         self.command("Next identity", "N", partial(self.people.step, 1))
         self.command("Identity before", "Shift+N", partial(self.people.step, -1))
         self.command("Filter the identities", "F", self.people.search.setFocus)
@@ -127,6 +127,7 @@ class RollPage(Page):
     def repaint_all(self) -> None:
         for button, picture in self._buttons:
             button.setIcon(icon(picture, self.desk.palette.ink))
+        self.people.again.setIcon(icon("recipe", self.desk.palette.ink))
         super().repaint_all()
 
     def resizeEvent(self, event: QResizeEvent) -> None:  # noqa: N802 - Qt's own name

@@ -125,6 +125,7 @@ class StartPage(Page):
         scroll.setWidgetResizable(True)
         scroll.setWidget(holder)
         right = QVBoxLayout()
+        right.setSpacing(10)
         self.recent_title = _title("Recent ledgers")
         right.addWidget(self.recent_title)
         right.addWidget(self.recent, 1)

@@ -109,6 +109,8 @@ class RollIdentity(QWidget):
         self._nearest = sheet.nearest
         self.near.put([_face(near) for near in sheet.nearest])
         self._tell_near("nearest others" if sheet.nearest else "no others known")
+        if self.naming.asking and not self.naming.field.text():
+            self.naming.suggest(self.likeliest())
 
     def wait_for_near(self, *, unknown: bool) -> None:
         """The nearest others are on their way; or nobody has looked for them on this large roll."""

@@ -8,12 +8,15 @@ from PySide6.QtCore import QItemSelectionModel, QModelIndex, QRect, QSize, Qt, Q
 from PySide6.QtGui import QColor, QPainter
 from PySide6.QtWidgets import (
     QComboBox,
+    QHBoxLayout,
     QLabel,
     QLineEdit,
     QListView,
+    QSizePolicy,
     QStyle,
     QStyledItemDelegate,
     QStyleOptionViewItem,
+    QToolButton,
     QVBoxLayout,
     QWidget,
 )
@@ -57,14 +60,20 @@ class RollList(QWidget):
         self.list.setAccessibleName("Identities")
         self.list.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.counts = QLabel()
+        self.counts.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
         self.counts.setProperty("voice", "muted")
         for box in (self.attribute, self.order):
             box.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(6)
-        for widget in (self.search, self.attribute, self.order, self.list, self.counts):
+        self.again = QToolButton()
+        foot = QHBoxLayout()
+        foot.addWidget(self.counts, 1)
+        foot.addWidget(self.again)
+        for widget in (self.search, self.attribute, self.order, self.list):
             column.addWidget(widget)
+        column.addLayout(foot)
         self._among: set[str] | None = None
         self._present = ""
         self._pause = QTimer(self)
@@ -159,6 +168,7 @@ class RollList(QWidget):
         shown, total = self.model.rowCount(), self.model.total
         of = "" if shown == total else f"{shown:,} of "
         self.counts.setText(f"{of}{total:,} identities, {self.model.photos:,} photos")
+        self.counts.setToolTip(self.counts.text())
         self._keep_present()
 
     def _keep_present(self) -> None:
@@ -190,9 +200,9 @@ class _EntryDelegate(QStyledItemDelegate):
             painter.drawRoundedRect(room.adjusted(1, 1, -1, -1), 5, 5)
         metrics = painter.fontMetrics()
         line = QRect(room.left() + 8, room.top() + 5, room.width() - 16, metrics.lineSpacing())
-        for text, colour in ((entry.name, palette.ink), (entry.figures(), palette.muted)):
+        middle, end = Qt.TextElideMode.ElideMiddle, Qt.TextElideMode.ElideRight
+        for text, colour, elide in ((entry.name, palette.ink, middle), (entry.figures(), palette.muted, end)):
             painter.setPen(QColor(palette.on_accent if chosen else colour))
-            elided = metrics.elidedText(text, Qt.TextElideMode.ElideMiddle, line.width())
-            painter.drawText(line, Qt.AlignmentFlag.AlignLeft, elided)
+            painter.drawText(line, Qt.AlignmentFlag.AlignLeft, metrics.elidedText(text, elide, line.width()))
             line.translate(0, metrics.lineSpacing())
         painter.restore()

@@ -64,6 +64,7 @@ class RollNaming(QWidget):
     def suggest(self, name: str) -> None:
         """Put a name pointed at elsewhere into the field."""
         self.field.setText(name)
+        self.field.selectAll()
         self.fault.clear()
         self.field.setFocus()
 
