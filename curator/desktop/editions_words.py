@@ -13,6 +13,7 @@ from curator.editions.step import EditionReport
 from curator.recipe import BANDS
 
 _ROWS_NAMED = 5
+_LOOKED_AT = {"manifest-sha256.txt": "files by their digests", "tagmanifest-sha256.txt": "files about the edition"}
 
 
 def headline(plan: EditionPlan) -> str:
@@ -100,7 +101,7 @@ def written_words(report: EditionReport) -> str:
 
 def audit_headline(report: AuditReport) -> str:
     """Sound or not, and how much was looked at."""
-    looked = ", ".join(f"{count:,} {what}" for what, count in report.checked.items())
+    looked = ", ".join(f"{count:,} {_LOOKED_AT.get(what, what)}" for what, count in report.checked.items())
     if report.sound:
         return f"Sound. Looked at {looked}."
     return f"{counted(len(report.faults), 'fault')} found. Looked at {looked}."

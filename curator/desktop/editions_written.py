@@ -13,6 +13,7 @@ from PySide6.QtWidgets import (
     QHeaderView,
     QLabel,
     QPushButton,
+    QScrollArea,
     QTableWidget,
     QTableWidgetItem,
     QVBoxLayout,
@@ -81,6 +82,10 @@ class Written(QWidget):
         self.faults.setTextFormat(Qt.TextFormat.PlainText)
         self.faults.setWordWrap(True)
         self.faults.setAccessibleName("Faults found by the audit")
+        self._faults_room = QScrollArea()
+        self._faults_room.setWidgetResizable(True)
+        self._faults_room.setFrameShape(QScrollArea.Shape.NoFrame)
+        self._faults_room.setWidget(self.faults)
         self.audit = QPushButton("Audit again   L")
         self.report = QPushButton("Open report   R")
         self.folder = QPushButton("Open folder   F")
@@ -93,9 +98,11 @@ class Written(QWidget):
         column.setContentsMargins(0, 0, 0, 0)
         column.addWidget(self.title)
         column.addWidget(self.table, 1)
-        for widget in (self.digest, self.audit_words, self.faults):
-            column.addWidget(widget)
+        for label in (self.digest, self.audit_words):
+            column.addWidget(label)
+        column.addWidget(self._faults_room, 1)
         column.addLayout(row)
+        column.addStretch(0)
         self.show_editions(())
 
     @property
@@ -115,6 +122,9 @@ class Written(QWidget):
                 item = QTableWidgetItem(text)
                 item.setToolTip(noted.data_digest if text == digest else text)
                 self.table.setItem(at, column, item)
+        self.table.setVisible(bool(self._rows))
+        high = self.table.sizeHintForRow(0) if self._rows else 0
+        self.table.setMaximumHeight(len(self._rows) * high + self.table.horizontalHeader().sizeHint().height() + 16)
         numbers = [noted.number for noted in self._rows]
         if numbers:
             self.table.setCurrentCell(numbers.index(choose) if choose in numbers else 0, 0)
@@ -136,7 +146,7 @@ class Written(QWidget):
         report = self._audits.get(noted.number) if noted is not None else None
         self.digest.setText(f"Digest {noted.data_digest}" if noted is not None else "")
         self.faults.setText("\n".join(fault_lines(report)) if report is not None else "")
-        self.faults.setVisible(report is not None and not report.sound)
+        self._faults_room.setVisible(report is not None and not report.sound)
         if report is not None:
             self.audit_words.setText(audit_headline(report))
         elif noted is not None and not there:

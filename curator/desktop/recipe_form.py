@@ -15,7 +15,7 @@ from PySide6.QtWidgets import QFileDialog, QLabel, QVBoxLayout, QWidget
 
 from curator.desktop import theme
 from curator.desktop.desk import Desk
-from curator.desktop.recipe_form_fields import Choice, Field, Folder, Names, Numbers, Ticks
+from curator.desktop.recipe_form_fields import Attributes, Choice, Field, Folder, Names, Numbers, Ticks
 from curator.domain import SPLITS
 from curator.errors import BadInput
 from curator.recipe import BANDS, DEFAULT_RECIPE_TEXT, Recipe, parse_recipe, recipe_toml
@@ -25,26 +25,26 @@ _MOST_BYTES = 1 << 20
 Parts = tuple[tuple[str, tuple[Field, ...]], ...]
 
 
-def _of_the_split(desk: Desk) -> Parts:
+def _of_the_split(attributes: Attributes) -> Parts:
     shares = (
         Numbers("split", "shares", "Of the identities", SPLITS, inline=True),
         Numbers("split", "", "Seed", ("seed",)),
     )
     held = (
-        Names("split", "balance", "Keep in proportion", desk),
-        Names("split", "keep_together", "Never part photos with the same", desk),
+        Names("split", "balance", "Keep in proportion", attributes),
+        Names("split", "keep_together", "Never part photos with the same", attributes),
         Folder("split", "keep_from", "Keep the splits of an earlier edition"),
     )
     return (("Shares", shares), ("Held to", held))
 
 
-def _of_the_lists(desk: Desk) -> Parts:
+def _of_the_lists(attributes: Attributes) -> Parts:
     pairs = (
         Numbers("pairs", "", "Rows, half of them mated", SPLITS),
         Numbers("pairs", "bands", "Shares by difficulty", BANDS, inline=True),
         Numbers("pairs", "", "Most pairs an identity appears in", ("per_identity",)),
         Numbers("pairs", "", "Least trust without a review", ("trust_floor",)),
-        Names("pairs", "match_on", "Match non-mated pairs on", desk),
+        Names("pairs", "match_on", "Match non-mated pairs on", attributes),
         Numbers("pairs", "", "Share of them that is matched", ("match_share",)),
     )
     triplets = (
@@ -99,7 +99,7 @@ class RecipeForm(QWidget):
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 12, 8)
         column.setSpacing(10)
-        for title, fields in (_of_the_lists if lists else _of_the_split)(desk):
+        for title, fields in (_of_the_lists if lists else _of_the_split)(Attributes(desk)):
             heading = QLabel(title)
             heading.setFont(theme.serif(1.15))
             column.addWidget(heading)
@@ -124,7 +124,7 @@ class RecipeForm(QWidget):
         """Another ledger: whatever the form held was another's."""
         recipe = recipe_in_hand(self._desk)
         keep_in_hand(self._desk, recipe)
-        self._show(recipe)
+        self._show(recipe, check=False)  # on entering the place: on a large roll it takes a while
 
     def recipe(self) -> Recipe | None:
         """The recipe in hand with what these fields hold; None where one of them is wrong, which it then says."""
@@ -136,11 +136,13 @@ class RecipeForm(QWidget):
             rest[table] = [line for field in self.fields if field.table == table for line in field.lines()]
         return parse_recipe("".join(f"[{table}]\n" + "\n".join(lines) + "\n" for table, lines in rest.items()))
 
-    def _show(self, recipe: Recipe) -> None:
+    def _show(self, recipe: Recipe, *, check: bool = True) -> None:
         self._showing = True
         for field in self.fields:
             field.show_recipe(recipe)
-            field.check()
+            field.wrong.hide()
+            if check:
+                field.check()
         self._showing = False
 
     def _changed(self) -> None:

@@ -128,12 +128,31 @@ class Numbers(Field):
             edit.setText(_shown(values.get(name)))
 
 
+class Attributes:
+    """The attributes that photos of the ledger have, asked once: the answer goes through those of all photos."""
+
+    def __init__(self, desk: Desk) -> None:
+        self._desk = desk
+        self._names: list[str] | None = None
+        desk.opened.connect(self._forget)
+        desk.roll_changed.connect(self._forget)
+
+    def names(self) -> list[str]:
+        """By name; none where no ledger is open."""
+        if self._names is None:
+            self._names = sorted(self._desk.ledger.attribute_values()) if self._desk.ledger is not None else []
+        return self._names
+
+    def _forget(self) -> None:
+        self._names = None
+
+
 class Names(Field):
     """Names of attributes, typed or taken from those that the roll has."""
 
-    def __init__(self, table: str, key: str, label: str, desk: Desk) -> None:
+    def __init__(self, table: str, key: str, label: str, attributes: Attributes) -> None:
         super().__init__(table, key, label)
-        self._desk = desk
+        self._attributes = attributes
         self.edit = self._editor("")
         self.edit.setPlaceholderText("nothing")
         self.row.addWidget(self.edit, 1)
@@ -160,15 +179,15 @@ class Names(Field):
 
     def fault(self) -> str:
         sentence = super().fault()
-        if sentence or self._desk.ledger is None:
+        if sentence or not self.told:
             return sentence
-        known = self._desk.ledger.attribute_values() if self.told else {}
+        known = self._attributes.names()
         unknown = next((name for name in self.told if name not in known), "")
         return f"No photo has the attribute '{unknown}'." if unknown else ""
 
     def _fill(self) -> None:
         self.menu.clear()
-        known = sorted(self._desk.ledger.attribute_values()) if self._desk.ledger is not None else []
+        known = self._attributes.names()
         for name in known:
             action = QAction(name, self.menu)
             action.setCheckable(True)

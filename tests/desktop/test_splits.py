@@ -11,7 +11,7 @@ from pytestqt.qtbot import QtBot
 from curator.desktop.places.splits import SplitsPage
 from curator.desktop.recipe_form_fields import Names, Numbers
 from curator.desktop.window import Window
-from curator.domain import Assignment
+from curator.domain import Assignment, PairAnswer
 from curator.ledger import Ledger
 from curator.recipe import DEFAULT_RECIPE_TEXT, parse_recipe
 
@@ -198,3 +198,25 @@ def test_leaks_that_came_after_the_split_are_told_in_words(
     assert any(line.startswith("Leak: the shot r-0") and line.endswith(" is in test and train.") for line in lines)
     assert "1 identity is in no split: r-03." in lines
     assert window.header.buttons[page].text() == f"Splits  {len(lines)}"
+
+
+def test_a_plan_that_verdicts_overtook_is_planned_again_before_it_is_put_into_force(
+    qtbot: QtBot, window: Window, read_ledger: Callable[[], Ledger]
+) -> None:
+    page, desk = _page(window), window.desk
+    qtbot.keyClick(page, Key.Key_P)
+    _settle(qtbot, window)
+    assert page.force.isEnabled()
+    desk.say("say same", verdicts=[desk.verdict("r-00/0.png", "r-02/0.png", PairAnswer.SAME)])
+    _settle(qtbot, window)
+    assert not page.force.isEnabled()
+    qtbot.keyClick(page, Key.Key_F)
+    _settle(qtbot, window)
+    assert _in_force(read_ledger) is None
+    qtbot.keyClick(page, Key.Key_P)
+    _settle(qtbot, window)
+    qtbot.keyClick(page, Key.Key_F)
+    _settle(qtbot, window)
+    held = _in_force(read_ledger)
+    assert held is not None
+    assert held[0].split_of["r-00"] == held[0].split_of["r-02"]

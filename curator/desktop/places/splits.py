@@ -45,6 +45,7 @@ class SplitsPage(Page):
         self.planned: tuple[Recipe, SplitReport] | None = None
         self.present: SplitReport | None = None
         self._stale = True
+        self._outdated = False
         self.form = RecipeForm(desk, lists=False)
         self.form.changed.connect(self._recipe_changed)
         self.form.entered.connect(self._plan)
@@ -151,12 +152,15 @@ class SplitsPage(Page):
             self._look_if_small()
 
     def something_said(self) -> None:
-        self._stale = True
+        self._stale = self._outdated = True
+        self._show_buttons()
+        self._advise()
         if self.isVisible():
             self._look_if_small()
 
     def _recipe_changed(self) -> None:
         self._show_buttons()
+        self._advise()
 
     # -- acts
 
@@ -169,7 +173,7 @@ class SplitsPage(Page):
 
         def then(report: SplitReport) -> None:
             if self.desk.ledger is ledger:
-                self.planned = (recipe, report)
+                self.planned, self._outdated = (recipe, report), False
                 self._show()
                 self.force.setFocus()
                 self.desk.told.emit("Planned a split; it is not in force yet.")
@@ -255,10 +259,16 @@ class SplitsPage(Page):
             self.balance.addWidget(chart)
 
     def _show_buttons(self) -> None:
-        same = self.planned is not None and self.form.recipe() == self.planned[0]
-        self.force.setEnabled(same)
+        # What is put into force is what was seen: neither another recipe nor later verdicts may change it unseen.
+        enabled = self.planned is not None and not self._past()
+        if self.force.hasFocus() and not enabled:
+            self.plan.setFocus()  # else the focus leaves the place, and its keys with it
+        self.force.setEnabled(enabled)
         self.look.setEnabled(self.desk.ledger is not None)
         self._show_ask()
+
+    def _past(self) -> bool:
+        return self.planned is not None and (self._outdated or self.form.recipe() != self.planned[0])
 
     def _show_ask(self) -> None:
         self.ask.setVisible(bool(self.groups.pairs()))
@@ -266,7 +276,9 @@ class SplitsPage(Page):
     def _advise(self) -> None:
         present = self.present
         self.counted.emit(open_matters(present) if present is not None else 0)
-        if self.planned is not None:
+        if self._past():
+            self.advised.emit("The plan is of the past: the recipe or the verdicts changed since; plan again.")
+        elif self.planned is not None:
             self.advised.emit("This split is planned only; put it into force, or change the recipe and plan again.")
         elif present is None:
             self.advised.emit("No split is in force; plan one.")
