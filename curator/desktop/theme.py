@@ -84,7 +84,9 @@ def _sheet(p: Palette) -> str:
         background: {p.leaf}; border: 1px solid {p.line}; border-radius: 6px; padding: 3px 6px;
         selection-background-color: {p.accent}; selection-color: {p.on_accent};
     }}
-    QLineEdit:focus, QPlainTextEdit:focus, QListView:focus, QTreeView:focus, QTableView:focus {{ border-color: {p.accent}; }}
+    QLineEdit:focus, QPlainTextEdit:focus, QListView:focus, QTreeView:focus, QTableView:focus {{
+        border-color: {p.accent};
+    }}
     QListView, QTreeView, QTableView {{ outline: 0; }}
     QListView::item, QTreeView::item, QTableView::item {{ padding: 4px 6px; }}
     QListView::item:hover, QTreeView::item:hover {{ background: {p.shade}; }}
