@@ -81,6 +81,7 @@ class Written(QWidget):
         self.faults.setProperty("voice", "warn")
         self.faults.setTextFormat(Qt.TextFormat.PlainText)
         self.faults.setWordWrap(True)
+        self.faults.setAlignment(Qt.AlignmentFlag.AlignTop)
         self.faults.setAccessibleName("Faults found by the audit")
         self._faults_room = QScrollArea()
         self._faults_room.setWidgetResizable(True)
