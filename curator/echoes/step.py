@@ -14,6 +14,7 @@ from pathlib import Path
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 from PIL import Image, ImageOps
 
 from curator.domain import Change, EchoGroup, EchoLink, Readings, Roll
@@ -30,11 +31,15 @@ from curator.intake.walking import walk
 from curator.ledger import Ledger
 from curator.progress import Progress, stop_if_wanted
 
-_VERSION = "echoes-2"
+_VERSION = "echoes-3"
 _PREPARED = 512
 """Photos kept ready for registration: candidates come sorted, so that each is needed several times in a row."""
 _BATCH = 24
 """Pairs registered at once."""
+_PART = 480
+"""Pairs whose links are written down together: what a stop may lose is some seconds' work."""
+_READ = 256
+"""Thumbnails read at once."""
 
 
 def find_echoes(ledger: Ledger, *, progress: Progress) -> tuple[EchoGroup, ...]:
@@ -46,9 +51,11 @@ def find_echoes(ledger: Ledger, *, progress: Progress) -> tuple[EchoGroup, ...]:
     known = ledger.finding("echo-links", key)
     readings = ledger.readings(roll)
     if known is None:
-        links = _links(ledger, roll, readings, candidates(readings, roll.identity_of, roll.digests), progress)
+        found = candidates(readings, roll.identity_of, roll.digests, _small(ledger, roll, progress))
+        links = _links(ledger, roll, readings, found, progress, key)
         with ledger.writing():
             ledger.put_finding("echo-links", key, [asdict(link) for link in links])
+            _forget_parts(ledger, found)
     else:
         links = [_from_document(row) for row in known]
     answers = standing(ledger.echo_verdicts())
@@ -72,30 +79,77 @@ def _key(ledger: Ledger, roll: Roll) -> str:
     return f"{_VERSION} {hashlib.sha256(told.encode()).hexdigest()[:24]}"
 
 
-def _links(ledger: Ledger, roll: Roll, readings: Readings, found: Candidates, progress: Progress) -> list[EchoLink]:
-    """The links among the candidates, sorted by their places. A stop is heeded between batches."""
+def _small(ledger: Ledger, roll: Roll, progress: Progress) -> NDArray[np.uint8]:
+    """The photos of the roll as small grey squares; zeros where there is no thumbnail."""
+    progress.begin("looking at the photos", len(roll))
+    small = np.zeros((len(roll), SMALL, SMALL), dtype=np.uint8)
+    for at in range(0, len(roll), _READ):
+        stop_if_wanted(progress)
+        digests = roll.digests[at : at + _READ]
+        thumbnails = ledger.thumbnails(sorted(set(digests)))
+        for i, digest in enumerate(digests, at):
+            if digest in thumbnails:
+                small[i] = np.asarray(_grey(thumbnails[digest]).resize((SMALL, SMALL), Image.Resampling.BOX))
+        progress.advance(len(digests))
+    return small
+
+
+def _links(
+    ledger: Ledger, roll: Roll, readings: Readings, found: Candidates, progress: Progress, key: str | None = None
+) -> list[EchoLink]:
+    """The links among the candidates, sorted by their places. A stop is heeded between batches.
+
+    With a `key` the links of each part of the candidates are written down once it is done, and a part that was
+    written down under that key is not done again.
+    """
 
     @lru_cache(_PREPARED)
     def prepared(i: int, mirrored: bool) -> registration.Prepared:
         return _prepared(ledger.thumbnails([roll.digests[i]])[roll.digests[i]], mirrored)
 
+    def settled(batch: list[tuple[int, int]], mirrored: bool) -> Iterator[tuple[tuple[int, int], EchoLink]]:
+        seconds = [prepared(b, mirrored) for _, b in batch]
+        registered = registration.register_many([prepared(a, False) for a, _ in batch], seconds)
+        for (a, b), one in zip(batch, registered, strict=True):
+            change = settled_change(_facts(roll, readings, a), _facts(roll, readings, b), one, mirrored=mirrored)
+            if change is not None:
+                yield (a, b), _link(roll, readings, (a, b), change, one, mirrored)
+
     progress.begin("bringing like photos over each other", len(found.straight) + len(found.mirrored))
+    place = roll.index_of()
     links = {
         (a, b): EchoLink(roll.photos[a], roll.photos[b], Change.IDENTICAL, 0, 1.0) for a, b in found.identical.tolist()
     }
-    for pairs, mirrored in ((found.straight, False), (found.mirrored, True)):
-        for at in range(0, len(pairs), _BATCH):
+    for name, part, mirrored in _parts(found):
+        kept = ledger.finding(name, key) if key else None
+        if kept is not None:
+            links |= {(place[link.a], place[link.b]): link for link in map(_from_document, kept)}
+            progress.advance(len(part))
+            continue
+        new: dict[tuple[int, int], EchoLink] = {}
+        for at in range(0, len(part), _BATCH):
             stop_if_wanted(progress)
-            batch = [(a, b) for a, b in pairs[at : at + _BATCH].tolist() if (a, b) not in links]
-            registered = registration.register_many(
-                [prepared(a, False) for a, _ in batch], [prepared(b, mirrored) for _, b in batch]
-            )
-            for (a, b), one in zip(batch, registered, strict=True):
-                change = settled_change(_facts(roll, readings, a), _facts(roll, readings, b), one, mirrored=mirrored)
-                if change is not None:
-                    links[(a, b)] = _link(roll, readings, (a, b), change, one, mirrored)
-            progress.advance(len(pairs[at : at + _BATCH]))
+            batch = part[at : at + _BATCH].tolist()
+            new |= settled([(a, b) for a, b in batch if (a, b) not in links], mirrored)
+            progress.advance(len(batch))
+        links |= new
+        if key:
+            with ledger.writing():
+                ledger.put_finding(name, key, [asdict(link) for link in new.values()])
     return [links[pair] for pair in sorted(links)]
+
+
+def _parts(found: Candidates) -> Iterator[tuple[str, NDArray[np.int64], bool]]:
+    """What there is to settle, part by part, each with a name to keep its links by."""
+    for pairs, mirrored in ((found.straight, False), (found.mirrored, True)):
+        for at in range(0, len(pairs), _PART):
+            yield f"echo-links-{'mirrored' if mirrored else 'straight'}-{at}", pairs[at : at + _PART], mirrored
+
+
+def _forget_parts(ledger: Ledger, found: Candidates) -> None:
+    """The whole is written down: its parts are emptied, so that nothing is held twice."""
+    for name, _, _ in _parts(found):
+        ledger.put_finding(name, "", None)
 
 
 def _link(
@@ -130,8 +184,7 @@ def _facts(roll: Roll, readings: Readings, i: int) -> Facts:
 
 
 def _prepared(thumbnail: bytes, mirrored: bool) -> registration.Prepared:
-    with Image.open(io.BytesIO(thumbnail)) as image:
-        grey: Image.Image = image.convert("L")
+    grey = _grey(thumbnail)
     if mirrored:
         grey = ImageOps.mirror(grey)
     sizes = (registration.COARSE, registration.FINE)
@@ -140,6 +193,12 @@ def _prepared(thumbnail: bytes, mirrored: bool) -> registration.Prepared:
         for side in sizes
     )
     return registration.prepare(small, large)
+
+
+def _grey(thumbnail: bytes) -> Image.Image:
+    with Image.open(io.BytesIO(thumbnail)) as image:
+        grey: Image.Image = image.convert("L")
+    return grey
 
 
 def _from_document(row: Mapping[str, Any]) -> EchoLink:
@@ -186,7 +245,7 @@ def compare(
         readings = ledger.readings(roll)
         side = np.array([int(name.startswith("b/")) for name in roll.photos])
         # To the search the two roots are two identities: what is near across them is all that counts.
-        found = candidates(readings, side, roll.digests)
+        found = candidates(readings, side, roll.digests, _small(ledger, roll, progress))
         across = Candidates(
             *(
                 pairs[side[pairs[:, 0]] != side[pairs[:, 1]]]

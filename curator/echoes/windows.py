@@ -87,8 +87,9 @@ def _axis(begin: float, end: float) -> _Reals:
     edges = SMALL * (begin + (end - begin) * np.arange(_SIDE + 1) / _SIDE)
     pixels = np.arange(SMALL)
     covered = np.minimum(edges[1:, None], pixels + 1) - np.maximum(edges[:-1, None], pixels)
-    share = np.maximum(covered, 0)
-    return (share / share.sum(axis=1, keepdims=True)).astype(np.float32)
+    covered = np.maximum(covered, 0)
+    share: _Reals = (covered / covered.sum(axis=1, keepdims=True)).astype(np.float32)
+    return share
 
 
 def _evened(pictures: _Reals) -> _Reals:
@@ -97,7 +98,8 @@ def _evened(pictures: _Reals) -> _Reals:
     rest = pictures - gaussian_filter(pictures, width)
     rest /= np.sqrt(gaussian_filter(rest * rest, width)) + np.float32(_FLOOR)
     flat: _Reals = rest.reshape(len(rest), -1)
-    return flat / _norm(flat)[:, None]
+    flat /= _norm(flat)[:, None]
+    return flat
 
 
 def _norm(flat: _Reals) -> _Reals:

@@ -8,7 +8,8 @@ from PIL import Image
 from sklearn.datasets import load_sample_image
 
 from curator.domain import Assignment, Change, PairAnswer, Scope, Verdict
-from curator.echoes import step
+from curator.echoes import registration, step
+from curator.echoes.registration import Prepared, Registered
 from curator.errors import Stopped
 from curator.intake.step import run
 from curator.ledger import Ledger
@@ -77,3 +78,53 @@ def test_it_can_be_stopped_and_begun_again(ledger: Ledger) -> None:
     with pytest.raises(Stopped):
         step.find_echoes(ledger, progress=_Impatient())
     assert len(step.find_echoes(ledger, progress=Silent())) == 2
+
+
+class _StoppedAfter(Silent):
+    def __init__(self, asked: int) -> None:
+        super().__init__()
+        self.asked = asked
+
+    def stop_wanted(self) -> bool:
+        self.asked -= 1
+        return self.asked < 0
+
+
+def test_what_was_settled_before_a_stop_is_not_settled_again(ledger: Ledger, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(step, "_PART", 1)
+    settled: list[int] = []
+    register_many = registration.register_many
+
+    def counted(a: list[Prepared], b: list[Prepared]) -> list[Registered]:
+        settled.append(len(a))
+        return register_many(a, b)
+
+    monkeypatch.setattr(registration, "register_many", counted)
+    # Asked once for the thumbnails, then before each part: the first part is done, the second is not.
+    with pytest.raises(Stopped):
+        step.find_echoes(ledger, progress=_StoppedAfter(2))
+    assert sum(settled) == 1
+    after = step.find_echoes(ledger, progress=Silent())
+    with_a_stop = sum(settled)
+    # Deleted findings are searched for again, in one go.
+    with ledger.writing():
+        ledger.put_finding("echo-links", "", None)
+    settled.clear()
+    assert step.find_echoes(ledger, progress=Silent()) == after
+    assert sum(settled) == with_a_stop > 1
+
+
+def test_parts_are_not_held_beside_the_whole(ledger: Ledger, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(step, "_PART", 1)
+    names: list[str] = []
+    put = Ledger.put_finding
+
+    def noted(self: Ledger, kind: str, key: str, document: object) -> None:
+        names.append(kind)
+        put(self, kind, key, document)
+
+    monkeypatch.setattr(Ledger, "put_finding", noted)
+    step.find_echoes(ledger, progress=Silent())
+    parts = set(names) - {"echo-links"}
+    assert len(parts) > 1
+    assert all(ledger.finding(name, "") is None for name in parts)
