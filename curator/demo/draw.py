@@ -25,11 +25,13 @@ def draw_demo(
     faults: Faults | None = None,
     siblings: int = SIBLINGS,
     workers: int = 1,
+    planned: Callable[[int], None] | None = None,
     drawn: Callable[[int], None] | None = None,
 ) -> AnswerSheet:
     """Draw a set into `target` (new or empty): photos/, photos/attributes.csv and answer_sheet.json.
 
-    `drawn` is called with the number of photos finished since its last call; what it raises stops the drawing.
+    `planned` is called once with the number of photos ahead, `drawn` with the number finished since its last call;
+    what `drawn` raises stops the drawing.
     Raises BadInput where `target` holds anything, EnvironmentFailed where it cannot be written.
     """
     if people < 2 or not 0 <= siblings <= people // 2 or photos_each < 2 or workers < 1:
@@ -37,6 +39,8 @@ def draw_demo(
     if target.exists() and (not target.is_dir() or any(target.iterdir())):
         raise BadInput(f"{target} is not an empty folder: the demo set is drawn into a new one")
     plan = plan_demo(seed, people=people, photos_each=photos_each, faults=faults, siblings=siblings)
+    if planned is not None:
+        planned(len(plan.jobs))
     try:
         _write(target, plan, workers, drawn)
     except OSError as error:

@@ -116,7 +116,10 @@ def _drawn(folder: Path, progress: Progress) -> AnswerSheet:
         return read_answer_sheet(folder / SHEET)
     if folder.exists() and any(folder.iterdir()):
         raise BadInput(f"{folder} holds something other than the demo set; name a new folder.")
-    progress.begin("drawing the demo set", None)
+    progress.begin("planning the demo set", None)
+
+    def planned(n: int) -> None:
+        progress.begin("drawing the demo set", n)
 
     def drawn(n: int) -> None:
         progress.advance(n)
@@ -127,7 +130,7 @@ def _drawn(folder: Path, progress: Progress) -> AnswerSheet:
     beside = folder.with_name(f".{folder.name}.partial")
     shutil.rmtree(beside, ignore_errors=True)
     try:
-        sheet = draw_demo(beside, workers=os.cpu_count() or 1, drawn=drawn)
+        sheet = draw_demo(beside, workers=os.cpu_count() or 1, planned=planned, drawn=drawn)
         if folder.exists():
             folder.rmdir()
         beside.rename(folder)

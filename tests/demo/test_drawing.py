@@ -47,14 +47,16 @@ def test_the_same_seed_plans_the_same_set_and_another_seed_another(small: Plan) 
 
 def test_a_set_written_by_one_worker_equals_one_written_by_two(tmp_path: Path) -> None:
     options = {"photos_each": 2.0, "faults": Faults(0, 0, 0, 1, 0, 0, 1, 0, 0), "siblings": 0}
+    told: list[int] = []
     for name, workers in (("one", 1), ("two", 2)):
-        draw_demo(tmp_path / name, 6, 3, workers=workers, **options)
+        draw_demo(tmp_path / name, 6, 3, workers=workers, planned=told.append, **options)
     one, two = (
         {p.relative_to(tmp_path / n).as_posix(): p.read_bytes() for p in (tmp_path / n).rglob("*") if p.is_file()}
         for n in ("one", "two")
     )
     assert one == two
     assert {"photos/attributes.csv", "answer_sheet.json"} < set(one)
+    assert told == [len(one) - 2] * 2
     assert all(p.stat().st_mode & 0o077 == 0 for p in tmp_path.glob("one/**/*"))
 
 
