@@ -12,6 +12,7 @@ from curator.domain import Ints, MinedPair, PairAnswer, PairKind, PhotoAnswer, R
 from curator.errors import BadInput
 from curator.ledger import NOT_READ_YET, Ledger
 from curator.pairs.mining import Mined, hard_mated, hard_non_mated, hardest_mated, semi_hard
+from curator.pairs.similarity import to_groups
 from curator.pairs.trust import TrustModel, fit_trust
 from curator.pairs.typical import Crowd, brief, nearest_identities, spreads, to_own_people
 from curator.progress import Progress, stop_if_wanted
@@ -19,6 +20,7 @@ from curator.verdicts import settle
 
 TRUST_SEED = 20_260_101
 """Fixed: the trust of a pair must not change from one look to the next."""
+_BINS = 40
 _CROWD = "crowd-1"
 _MARGIN = 0.2
 _POOL = 50
@@ -196,3 +198,33 @@ def _crowd(ledger: Ledger, progress: Progress) -> tuple[list[str], Crowd]:
     with ledger.writing():
         ledger.put_array("crowd", key, crowd.packed())
     return names, crowd
+
+
+@dataclass(frozen=True)
+class Scale:
+    """Where similarities of photos to identities lie on this roll: counts by bin of the edges (m + 1,)."""
+
+    edges: tuple[float, ...]
+    mated: tuple[int, ...]
+    """Photos by mean similarity to the others of their own identity."""
+    non_mated: tuple[int, ...]
+    """Photos by mean similarity to an identity drawn at random among the others."""
+
+
+def similarity_scale(ledger: Ledger, *, progress: Progress) -> Scale:
+    """What a similarity of a photo to an identity means on this roll. Raises `BadInput` where nothing is embedded."""
+    roll, readings, trust = load_trust(ledger, progress=progress)
+    photos = np.flatnonzero(readings.embedded)
+    own = trust.own[photos]
+    own = own[np.isfinite(own)]
+    strange = np.zeros(0)
+    if len(roll.identities) > 1:
+        rng = np.random.default_rng(TRUST_SEED)
+        others = (roll.identity_of[photos] + rng.integers(1, len(roll.identities), len(photos))) % len(roll.identities)
+        known = trust.core.counts[others] > 0
+        strange = to_groups(readings.embeddings, photos[known], trust.core, others[known])
+    values = np.concatenate([own, strange])
+    low, high = (float(values.min()), float(values.max())) if len(values) else (0.0, 1.0)
+    edges = np.linspace(low, max(high, low + 1e-6), _BINS + 1)
+    mated, non_mated = (np.histogram(part, edges)[0] for part in (own, strange))
+    return Scale(tuple(edges.tolist()), tuple(mated.tolist()), tuple(non_mated.tolist()))
