@@ -12,6 +12,7 @@ from pytestqt.qtbot import QtBot
 
 from curator.desktop.models.identities import IdentitiesModel, Order
 from curator.desktop.models.leaves import Leaf, Mark
+from curator.desktop.places import roll as roll_module
 from curator.desktop.places.roll import RollPage
 from curator.desktop.widgets.sheet import LARGEST, Sheet
 from curator.desktop.window import Window
@@ -267,10 +268,42 @@ def test_new_photos_are_read_while_the_window_stays_usable(qtbot: QtBot, tmp_pat
     assert window.desk.work.busy
     qtbot.keyClick(page.people.list, Qt.Key.Key_Down)
     assert page.view.identity == "b", "another identity is shown while photos are read"
+    _press(qtbot, page, 0)
+    qtbot.keyClick(page.view.sheet, Qt.Key.Key_X)
+    assert window.desk.work.busy
+    assert window.strip.told.text() == "Set 1 photo aside."
     _settle(qtbot, page)
     assert page.people.model.photos == 4
     assert page.view.identity == "b"
     assert "b/2.png" in _photos(page)
+    with Ledger.open(tmp_path / "small") as ledger:
+        assert [v.photo_a for v in ledger.verdicts()] == ["b/1.png"]
+    window.desk.close()
+
+
+def test_on_a_large_roll_nothing_long_is_looked_for_unasked(
+    qtbot: QtBot, desk_ledger: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(roll_module, "_LARGE", 10)
+    # Another place may have looked at all identities by itself: here nobody has.
+    with monkeypatch.context() as unknown:
+        unknown.setattr(roll_module, "knows_the_crowd", lambda _: False)
+        window = Window(desk_ledger)
+        qtbot.addWidget(window, before_close_func=lambda w: w.desk.close())
+        with qtbot.waitActive(window):
+            window.show()
+        page = window.pages[0]
+        assert isinstance(page, RollPage)
+        _settle(qtbot, page)
+    assert page.view.sheet.leaves.leaves[0].note, "the photos are sorted all the same"
+    assert page.view.meet.isVisible()
+    assert not page.view.near.isVisible()
+    assert page.people.model.entry(0).spread is None
+    qtbot.mouseClick(page.view.meet, Qt.MouseButton.LeftButton)
+    _settle(qtbot, page)
+    assert not page.view.meet.isVisible()
+    assert len(page.view.near.leaves.leaves) == 3
+    assert page.people.model.entry(0).spread is not None
     window.desk.close()
 
 

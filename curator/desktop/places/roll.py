@@ -23,6 +23,7 @@ from curator.domain import PairAnswer, PhotoAnswer, Verdict
 from curator.intake.step import IntakeReport, run
 from curator.ledger import Ledger
 from curator.pairs.step import IdentitySheet, SheetPhoto, identity_sheet, knows_the_crowd, sheet_photos
+from curator.progress import Silent
 
 _LARGE = 50_000
 """Photos; from here on nothing that takes long is looked for unasked."""
@@ -232,10 +233,16 @@ class RollPage(Page):
         self._pause.start()
 
     def _look_closer(self) -> None:
-        if not self.view.identity:
+        ledger, identity = self.desk.ledger, self.view.identity
+        if ledger is None or not identity:
             return
-        task = partial(_sheet, identity=self.view.identity, large=self._is_large)
-        self.desk.start(f"Looking at {self.view.identity}", task, self._put_sheet, key="roll sheet")
+        few = not self._is_large and self.people.model.count_of(identity) <= _AT_ONCE
+        if few and knows_the_crowd(ledger):
+            # Not behind long work: nearest others are wanted while an intake or a search goes on.
+            self._put_sheet((identity_sheet(ledger, identity, progress=Silent()), True))
+            return
+        task = partial(_sheet, identity=identity, large=self._is_large)
+        self.desk.start(f"Looking at {identity}", task, self._put_sheet, key="roll sheet")
 
     def _put_sheet(self, found: tuple[IdentitySheet, bool]) -> None:
         sheet, known = found
