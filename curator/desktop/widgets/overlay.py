@@ -101,7 +101,7 @@ class Overlay(QWidget):
 
     def _draw_onto(self, painter: QPainter, place: QRectF, image: QImage) -> None:
         assert self._link is not None
-        shown = image.mirrored(True, False) if self._link.mirrored else image
+        shown = image.transformed(QTransform.fromScale(-1, 1)) if self._link.mirrored else image
         painter.save()
         painter.translate(place.topLeft())
         painter.scale(place.width(), place.height())
