@@ -10,14 +10,16 @@ from PySide6.QtGui import QWheelEvent
 from PySide6.QtWidgets import QApplication
 from pytestqt.qtbot import QtBot
 
+from curator.desktop.desk import Desk
+from curator.desktop.memory import Memory
 from curator.desktop.models.identities import IdentitiesModel, Order
 from curator.desktop.models.leaves import Leaf, Mark
+from curator.desktop.models.roll_look import Look
 from curator.desktop.places import roll as roll_module
 from curator.desktop.places.roll import RollPage
 from curator.desktop.widgets.sheet import LARGEST, Sheet
 from curator.desktop.window import Window
 from curator.domain import PairAnswer, PhotoAnswer
-from curator.echoes.step import find_echoes
 from curator.intake.step import run
 from curator.ledger import Ledger
 from curator.pairs.step import identity_sheet
@@ -29,7 +31,20 @@ ReadLedger = Callable[[], Ledger]
 
 @pytest.fixture
 def roll(qtbot: QtBot, desk_ledger: Path) -> RollPage:
-    """The place in a window, with everything looked up."""
+    """The place by itself, with everything looked up: the other places have looks of their own, that take time."""
+    page = RollPage(Desk(Memory()))
+    qtbot.addWidget(page, before_close_func=lambda p: p.desk.close())
+    page.resize(1000, 540)
+    with qtbot.waitActive(page):
+        page.show()
+    page.desk.open(desk_ledger)
+    _settle(qtbot, page)
+    return page
+
+
+@pytest.fixture
+def roll_in_window(qtbot: QtBot, desk_ledger: Path) -> RollPage:
+    """The place in the window."""
     window = Window(desk_ledger)
     qtbot.addWidget(window, before_close_func=lambda w: w.desk.close())
     with qtbot.waitActive(window):
@@ -114,7 +129,10 @@ def test_an_attribute_keeps_those_that_have_it(qtbot: QtBot, roll: RollPage) -> 
     roll.desk.close()
 
 
-def test_several_photos_are_set_aside_and_taken_back(qtbot: QtBot, roll: RollPage, read_ledger: ReadLedger) -> None:
+def test_several_photos_are_set_aside_and_taken_back(
+    qtbot: QtBot, roll_in_window: RollPage, read_ledger: ReadLedger
+) -> None:
+    roll = roll_in_window
     photos = _photos(roll)
     _press(qtbot, roll, 1)
     _press(qtbot, roll, 3, CTRL)
@@ -138,10 +156,12 @@ def test_several_photos_are_set_aside_and_taken_back(qtbot: QtBot, roll: RollPag
 
 
 def test_without_a_chosen_photo_nothing_is_said(qtbot: QtBot, roll: RollPage, read_ledger: ReadLedger) -> None:
+    complaints: list[str] = []
+    roll.desk.complained.connect(complaints.append)
     qtbot.keyClick(roll.people.list, Qt.Key.Key_X)
     with read_ledger() as ledger:
         assert ledger.verdicts() == []
-    assert "Choose a photo first" in roll.window().strip.told.text()  # type: ignore[attr-defined]
+    assert "Choose a photo first" in complaints[0]
     roll.desk.close()
 
 
@@ -219,20 +239,25 @@ def test_photos_are_asked_in_pairs(qtbot: QtBot, roll: RollPage) -> None:
     roll.desk.close()
 
 
-def test_echoes_and_doubts_are_marked(qtbot: QtBot, desk_ledger: Path, read_ledger: ReadLedger) -> None:
-    with read_ledger() as ledger:
-        find_echoes(ledger, progress=Silent())
-    window = Window(desk_ledger)
-    qtbot.addWidget(window, before_close_func=lambda w: w.desk.close())
-    with qtbot.waitActive(window):
-        window.show()
-    page = window.pages[0]
-    assert isinstance(page, RollPage)
-    _settle(qtbot, page)
-    copy = next(leaf for leaf in page.view.sheet.leaves.leaves if leaf.photo == "r-00/copy.png")
+def test_echoes_are_marked(roll: RollPage) -> None:
+    copy = next(leaf for leaf in roll.view.sheet.leaves.leaves if leaf.photo == "r-00/copy.png")
     assert Mark.ECHO in copy.marks
     assert "the same shot as r-01/0.png" in copy.words()
-    window.desk.close()
+    roll.desk.close()
+
+
+def test_a_doubt_is_marked_until_something_is_said_of_the_photo(qtbot: QtBot, roll: RollPage) -> None:
+    photo = _photos(roll)[2]
+    roll._put_look(Look(doubts={"r-00": 1}, doubted={photo: "poor photo, probability 0.90"}))
+    leaf = roll.view.sheet.leaves.leaves[2]
+    assert leaf.marks == (Mark.DOUBT,)
+    assert "poor photo, probability 0.90" in leaf.words()
+    assert "1 doubt" in roll.view.figures.text()
+    _press(qtbot, roll, 2)
+    qtbot.keyClick(roll.view.sheet, Qt.Key.Key_B)
+    assert roll.view.sheet.leaves.leaves[2].marks == ()
+    assert roll.view.sheet.leaves.leaves[2].note == "belongs"
+    roll.desk.close()
 
 
 def test_thumbnails_grow_and_their_size_is_remembered(qtbot: QtBot, roll: RollPage) -> None:
@@ -288,12 +313,11 @@ def test_on_a_large_roll_nothing_long_is_looked_for_unasked(
     # Another place may have looked at all identities by itself: here nobody has.
     with monkeypatch.context() as unknown:
         unknown.setattr(roll_module, "knows_the_crowd", lambda _: False)
-        window = Window(desk_ledger)
-        qtbot.addWidget(window, before_close_func=lambda w: w.desk.close())
-        with qtbot.waitActive(window):
-            window.show()
-        page = window.pages[0]
-        assert isinstance(page, RollPage)
+        page = RollPage(Desk(Memory()))
+        qtbot.addWidget(page, before_close_func=lambda p: p.desk.close())
+        with qtbot.waitActive(page):
+            page.show()
+        page.desk.open(desk_ledger)
         _settle(qtbot, page)
     assert page.view.sheet.leaves.leaves[0].note, "the photos are sorted all the same"
     assert page.view.meet.isVisible()
@@ -304,7 +328,7 @@ def test_on_a_large_roll_nothing_long_is_looked_for_unasked(
     assert not page.view.meet.isVisible()
     assert len(page.view.near.leaves.leaves) == 3
     assert page.people.model.entry(0).spread is not None
-    window.desk.close()
+    page.desk.close()
 
 
 def test_a_sheet_fetches_only_what_is_in_view(qtbot: QtBot, roll: RollPage, monkeypatch: pytest.MonkeyPatch) -> None:
