@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import faulthandler
+import gc
+import itertools
 import os
 import sys
 import traceback
@@ -10,6 +12,7 @@ from datetime import datetime
 from pathlib import Path
 from types import TracebackType
 
+from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QApplication
 
 from curator import __version__
@@ -18,6 +21,9 @@ from curator.desktop.memory import settings_folder
 from curator.desktop.palette import LIGHT
 from curator.desktop.window import Window
 from curator.ledger import Ledger
+
+_COLLECT_MS = 2_000
+_FULL_EVERY = 15
 
 
 def open_desk(ledger: Path | None) -> int:
@@ -31,8 +37,20 @@ def open_desk(ledger: Path | None) -> int:
     application.setWindowIcon(icon("pairwright", LIGHT.accent))
     window = Window(ledger)
     _watch(window)
+    _collect_here(window)
     window.show()
     return int(application.exec())
+
+
+def _collect_here(window: Window) -> None:
+    """Collect garbage in the window's thread only: collected by a working thread, a widget would end in that one."""
+    gc.collect()
+    gc.freeze()
+    gc.disable()
+    timer = QTimer(window)
+    rounds = itertools.count(1)
+    timer.timeout.connect(lambda: gc.collect(2 if next(rounds) % _FULL_EVERY == 0 else 1))
+    timer.start(_COLLECT_MS)
 
 
 def _watch(window: Window) -> None:

@@ -21,10 +21,11 @@ _MOST_SECONDS = 90.0
 
 def take(ledger: Path, out: Path, scale: str) -> None:
     """Save all pictures of one scale; runs in a process of its own."""
-    from PySide6.QtCore import QCoreApplication, Qt
-    from PySide6.QtGui import QGuiApplication
+    from PySide6.QtCore import QCoreApplication
     from PySide6.QtWidgets import QApplication
 
+    from curator.desktop import theme
+    from curator.desktop.palette import DARK, LIGHT
     from curator.desktop.window import Window
 
     application = QApplication([])
@@ -37,8 +38,9 @@ def take(ledger: Path, out: Path, scale: str) -> None:
                 quiet = time.monotonic()
             time.sleep(0.01)
 
-    for scheme in (Qt.ColorScheme.Light, Qt.ColorScheme.Dark):
-        QGuiApplication.styleHints().setColorScheme(scheme)
+    for palette in (LIGHT, DARK):
+        # A platform without a screen knows no scheme of the system's.
+        theme.present_palette = lambda palette=palette: palette  # type: ignore[misc]
         window = Window(None)
         for width, height in _SIZES if scale == "1" else _SIZES[:1]:
             window.resize(width, height)
@@ -48,7 +50,7 @@ def take(ledger: Path, out: Path, scale: str) -> None:
             for page in (window.start, *window.pages):
                 window.show_page(page)
                 settle(window)
-                name = f"{page.name.lower()}-{width}x{height}-{scale}x-{scheme.name.lower()}.png"
+                name = f"{page.name.lower()}-{width}x{height}-{scale}x-{'dark' if palette.dark else 'light'}.png"
                 window.grab().save(str(out / name))
         window.desk.close()
         window.close()
