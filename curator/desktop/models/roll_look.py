@@ -8,13 +8,16 @@ from dataclasses import dataclass, field
 
 from curator.desktop.models.leaves import Leaf, Mark
 from curator.domain import Doubt, EchoAnswer, EchoVerdict, PhotoAnswer
-from curator.doubts.settling import OPEN_FROM
 from curator.doubts.step import find_doubts
 from curator.echoes.step import kept_links
 from curator.ledger import Ledger
 from curator.pairs.step import SheetPhoto, spread
 from curator.progress import Progress
 from curator.verdicts import pair_key, settle
+
+
+_LIKELY = 0.5
+"""A doubt of less is counted, and marks no photo: a sheet full of marks says nothing."""
 
 
 @dataclass(frozen=True)
@@ -24,7 +27,7 @@ class Look:
     doubts: Mapping[str, int] = field(default_factory=dict)
     """Identity to its open doubts."""
     doubted: Mapping[str, str] = field(default_factory=dict)
-    """Photo to what is doubted about it alone, in words."""
+    """Photo to what is doubted about it alone, in words, where the doubt is likelier right than not."""
     spread: Mapping[str, float] = field(default_factory=dict)
     echoes: Mapping[str, str] | None = None
     """Photo to another that shows the same shot; None where nobody looked for echoes."""
@@ -49,10 +52,10 @@ def _open_doubts(doubts: Sequence[Doubt]) -> tuple[dict[str, int], dict[str, str
     counts: Counter[str] = Counter()
     doubted: dict[str, str] = {}
     for doubt in doubts:
-        if doubt.settled or doubt.probability < OPEN_FROM:
+        if doubt.settled:
             continue
         counts.update(set(doubt.identities))
-        if len(doubt.photos) == 1:
+        if len(doubt.photos) == 1 and doubt.probability >= _LIKELY:
             words = doubt.kind.value.replace("-", " ")
             doubted.setdefault(doubt.photos[0], f"{words}, probability {doubt.probability:.2f}")
     return dict(counts), doubted
