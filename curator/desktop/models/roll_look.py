@@ -15,7 +15,6 @@ from curator.pairs.step import SheetPhoto, spread
 from curator.progress import Progress
 from curator.verdicts import pair_key, settle
 
-
 _LIKELY = 0.5
 """A doubt of less is counted, and marks no photo: a sheet full of marks says nothing."""
 
