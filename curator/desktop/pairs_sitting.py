@@ -21,6 +21,8 @@ class Given:
     act: int
     question: Question
     word: str
+    unusable: tuple[str, ...] = ()
+    """The photos it was said of, where it was said of photos: no pair of theirs is worth asking any more."""
     at: float = field(default_factory=time.monotonic)
     standing: bool = True
 
@@ -34,9 +36,19 @@ class Sitting:
         self._reopened: Question | None = None
         self.given: list[Given] = []
 
-    def ask(self, questions: Sequence[Question]) -> None:
-        """New questions: those of the order chosen. What was said stays listed."""
-        self._questions = list(questions)
+    def ask(self, questions: Sequence[Question], *, keep: bool = False) -> None:
+        """New questions, each pair once. What was said stays listed; with `keep`, what is shown stays shown if asked.
+
+        A pair that was said already in this sitting is only shown by itself where it comes first: it was wanted.
+        """
+        present = self.present
+        once: dict[tuple[str, str], Question] = {}
+        for question in questions:
+            once.setdefault(_key(question), question)
+        if keep and present is not None and _key(present) in once:
+            first = once.pop(_key(present))
+            once = {_key(first): first, **once}
+        self._questions = list(once.values())
         self._place = 0
         self._reopened = None
 
@@ -48,22 +60,24 @@ class Sitting:
 
     @property
     def n_open(self) -> int:
+        """Pairs of the list that nothing was said of yet, those passed too."""
         said = {_key(entry.question) for entry in self.given if entry.standing}
-        return sum(_key(question) not in said for question in self._questions)
+        gone = self._unusable()
+        return sum(_key(q) not in said and not gone & {q.photo_a, q.photo_b} for q in self._questions)
 
     def said_of(self, question: Question) -> str:
         """The word that stands for this pair in this sitting; empty for none."""
         words = [e.word for e in self.given if e.standing and _key(e.question) == _key(question)]
         return words[-1] if words else ""
 
-    def note(self, act: Act, question: Question, word: str) -> None:
-        self.given.append(Given(act.number, question, word))
+    def note(self, act: Act, question: Question, word: str, unusable: Sequence[str] = ()) -> None:
+        self.given.append(Given(act.number, question, word, tuple(unusable)))
 
     def go_on(self) -> None:
-        """To the next question that nothing was said of; after a pair that was opened again, to where one was."""
-        if self._reopened is not None:
-            self._reopened = None
-        while self.present is not None and self.said_of(self.present):
+        """To the next question that is open; after a pair that was opened again, to where one was."""
+        self._reopened = None
+        gone = self._unusable()
+        while (q := self.present) is not None and (gone & {q.photo_a, q.photo_b} or self.said_of(q)):
             self._place += 1
 
     def step(self, by: int) -> None:
@@ -89,7 +103,8 @@ class Sitting:
 
     def ahead(self, n: int) -> list[Question]:
         """The next questions, the nearest last: pictures wished for last come first."""
-        return self._questions[self._place + 1 : self._place + 1 + n][::-1]
+        start = self._place + (self._reopened is None)
+        return self._questions[start : start + n][::-1]
 
     def pace(self) -> float:
         """Verdicts a minute over the last minutes; 0 while there are too few to tell."""
@@ -98,6 +113,9 @@ class Sitting:
         if len(recent) < _FEWEST:
             return 0.0
         return 60.0 * len(recent) / max(1.0, now - recent[0])
+
+    def _unusable(self) -> set[str]:
+        return {photo for entry in self.given if entry.standing for photo in entry.unusable}
 
 
 def _key(question: Question) -> tuple[str, str]:

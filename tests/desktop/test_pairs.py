@@ -108,9 +108,9 @@ def test_unusable_asks_which(
     qtbot.keyClick(page, key)  # nothing was asked yet
     assert _present(window) == pair
     qtbot.keyClick(page, Key.Key_U)
-    assert page.which.isVisible()
+    assert page.answers.choosing
     qtbot.keyClick(page, key)
-    assert not page.which.isVisible()
+    assert not page.answers.choosing
     assert _present(window) != pair
     with read_ledger() as ledger:
         said = [(v.photo_a, v.photo_b, v.answer) for v in ledger.verdicts()]
@@ -121,7 +121,7 @@ def test_escape_leaves_the_choice_of_an_unusable_photo(qtbot: QtBot, window: Win
     page = _page(window)
     qtbot.keyClick(page, Key.Key_U)
     qtbot.keyClick(page, Key.Key_Escape)
-    assert not page.which.isVisible()
+    assert not page.answers.choosing
 
 
 def test_a_blind_reading_hides_names_context_and_reasons(
@@ -149,7 +149,7 @@ def test_a_verdict_of_this_sitting_is_opened_again(
     place = page.given.visualItemRect(page.given.item(0)).center()
     qtbot.mouseClick(page.given.viewport(), Qt.MouseButton.LeftButton, pos=place)
     assert _present(window) == pair
-    assert "you said: same" in page.told.text()
+    assert "You said: same" in page.told.text()
     QTest.qWait(2)  # another verdict of the same instant could not be told from the first
     qtbot.keyClick(page, Key.Key_D)
     assert _present(window) == following
