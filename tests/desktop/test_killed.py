@@ -46,7 +46,7 @@ def test_no_verdict_that_was_shown_as_given_is_lost(desk_ledger: Path, tmp_path:
         with subprocess.Popen(arguments, env=environment, stdout=subprocess.PIPE, text=True) as process:
             assert process.stdout is not None
             assert process.stdout.readline() == "ready\n"
-            time.sleep(chance.uniform(0.0, 0.25))
+            time.sleep(chance.uniform(0.0, 0.6))
             process.send_signal(signal.SIGKILL)
             shown = process.stdout.read().split()
         with Ledger.open(ledger_path) as ledger:
@@ -56,6 +56,6 @@ def test_no_verdict_that_was_shown_as_given_is_lost(desk_ledger: Path, tmp_path:
         assert verdicts - kept >= given
         # One more may be on disk than was shown, never half of one.
         assert verdicts - kept <= given + 1
-        assert sum(act.n for act in acts) == verdicts
+        assert sum(act.n for act in acts if act.annotator) == verdicts
         kept = verdicts
     assert kept > 0
