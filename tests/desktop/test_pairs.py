@@ -206,3 +206,42 @@ def test_a_sitting_never_shows_an_answered_pair_by_itself() -> None:
     assert sitting.n_open == 1
     assert not sitting.follow(Act(9, "other", "ada", "", 1, True), taken_back=True)
     assert sitting.pace() > 0
+
+
+def test_a_sitting_passes_over_pairs_of_an_unusable_photo_until_that_is_taken_back() -> None:
+    sitting = Sitting()
+    shared = Question("a/0", "c/0", "a", "c", 0, 0.5, 0.5, 1.0, "Why.")
+    sitting.ask([_question(0), shared, _question(1), _question(1)])
+    assert sitting.n_open == 3
+    act = Act(1, "said", "ada", "", 1, True)
+    sitting.note(act, _question(0), "unusable", ["a/0"])
+    sitting.go_on()
+    assert sitting.present == _question(1)
+    assert sitting.n_open == 1
+    assert sitting.follow(act, taken_back=True)
+    assert sitting.n_open == 3
+
+
+def test_the_right_arrow_chooses_the_right_photo_and_enter_opens_the_verdict_again(
+    qtbot: QtBot, window: Window, read_ledger: Callable[[], Ledger]
+) -> None:
+    page, pair = _page(window), _present(window)
+    qtbot.keyClick(page, Key.Key_U)
+    qtbot.keyClick(page, Key.Key_Right)
+    with read_ledger() as ledger:
+        assert [v.photo_a for v in ledger.verdicts()] == [pair[1]]
+    assert pair[1] not in _present(window)
+    qtbot.keyClick(page, Key.Key_L)
+    assert page.given.hasFocus()
+    qtbot.keyClick(page.given, Key.Key_Return)
+    assert _present(window) == pair
+
+
+def test_a_blind_reading_names_nobody_in_the_list_or_the_line_of_undo(qtbot: QtBot, window: Window) -> None:
+    page, pair = _page(window), _present(window)
+    qtbot.keyClick(page, Key.Key_B)
+    qtbot.keyClick(page, Key.Key_S)
+    told = page.given.item(0).text() + page.given.item(0).toolTip() + window.strip.told.text()
+    assert not any(name in told for name in pair)
+    qtbot.keyClick(page, Key.Key_B)
+    assert all(name in page.given.item(0).toolTip() for name in pair)
