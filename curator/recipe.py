@@ -39,6 +39,7 @@ formats = ["parquet", "csv"]
 BANDS = ("easy", "middle", "hard")
 _FORMATS = ("parquet", "csv", "lfw-text")
 _RULES = ("semi-hard", "hard", "random")
+_LARGEST = 2**63 - 1
 
 
 @dataclass(frozen=True)
@@ -195,6 +196,8 @@ class _Table:
         value = self.left.pop(key, default)
         if isinstance(value, bool) or not isinstance(value, int) or value < least:
             raise self.bad(key, f"must be a whole number of at least {least}")
+        if value > _LARGEST:
+            raise self.bad(key, f"must be at most {_LARGEST}, which is what a ledger can hold")
         return value
 
     def number(self, key: str, default: float, least: float, most: float) -> float:

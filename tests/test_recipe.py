@@ -50,6 +50,7 @@ def test_what_is_left_out_takes_its_default() -> None:
         ("[split]\nshares = { train = 2.0, val = -1.0 }", "from 0 to 1"),
         ("[split]\nseed = -1", "at least 0"),
         ("[split]\nseed = true", "whole number"),
+        ("[split]\nseed = 9223372036854775808", "at most 9223372036854775807"),
         ("[split]\nbalance = 'club'", "list of texts"),
         ("[split]\nbalance = ['club', 'club']", "twice"),
         ("[pairs]\ntrain = 3", "must be even"),

@@ -123,6 +123,11 @@ class Desk(QObject):
             self.told.emit(f"{_capital(name)}.")
         return act
 
+    def acted(self) -> None:
+        """A step has noted an act of its own, such as a split: nothing older can be restored over it."""
+        self._undone.clear()
+        self.said.emit(self.last_act())
+
     def last_act(self) -> Act | None:
         """What `undo` would take back, across restarts: the latest of this annotator, or a split."""
         if self.ledger is None:

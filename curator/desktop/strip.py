@@ -9,6 +9,8 @@ from curator.desktop.desk import Desk
 
 _TOLD_MS = 12_000
 _BAR_WIDTH = 160
+_SHORT_MS = 300
+"""Work that is over by then is not shown: the strip would only flash."""
 
 
 class Strip(QWidget):
@@ -45,7 +47,11 @@ class Strip(QWidget):
         desk.complained.connect(lambda text: self._say(text, "warn"))
         desk.said.connect(lambda _: self._show_undo())
         desk.opened.connect(self._show_undo)
-        desk.work.changed.connect(self._show_work)
+        self._patience = QTimer(self)
+        self._patience.setSingleShot(True)
+        self._patience.setInterval(_SHORT_MS)
+        self._patience.timeout.connect(self._show_work)
+        desk.work.changed.connect(self._work_changed)
         self._show_undo()
         self._show_work()
 
@@ -64,6 +70,15 @@ class Strip(QWidget):
         self.undo.setVisible(act is not None)
         if act is not None:
             self.undo.setToolTip(f"Take back: {act.name} (Ctrl+Z)")
+
+    def _work_changed(self) -> None:
+        if not self._desk.work.busy:
+            self._patience.stop()
+            self._show_work()
+        elif self.bar.isVisible():
+            self._show_work()
+        elif not self._patience.isActive():
+            self._patience.start()
 
     def _show_work(self) -> None:
         counter = self._desk.work.counter

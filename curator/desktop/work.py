@@ -74,6 +74,8 @@ class Job:
     """A waiting job of the same key is replaced: its answer is no longer wanted."""
     ledger: Path | None = None
     """None: the task is given no ledger."""
+    stopped: str = "what was done is kept"
+    """What a person reads after a stop."""
 
 
 class _Runner(QThread):
@@ -94,7 +96,7 @@ class _Runner(QThread):
                 with Ledger.open(self.job.ledger) as ledger:
                     self.result = self.job.task(ledger, self.counter)
         except Stopped:
-            self.sentence = f"{self.job.name}: stopped; what was done is kept."
+            self.sentence = f"{self.job.name}: stopped; {self.job.stopped}."
         except PairwrightError as error:
             self.sentence = str(error)
         except Exception as error:  # a bug: told in the window, where it can be reported

@@ -181,7 +181,7 @@ class EditionsPage(Page):
             self._show_leaf(self.written)
             self._propose()
             # The split it was written with is in force now, and is an act that can be taken back.
-            self.desk.said.emit(self.desk.last_act())
+            self.desk.acted()
             self.desk.told.emit(written_words(report))
 
         self.desk.start("Writing the edition", task, then, key="write")

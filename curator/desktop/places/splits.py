@@ -196,7 +196,7 @@ class SplitsPage(Page):
             self.planned, self.present, self._stale = None, report, False
             self._show()
             self.desk.told.emit(f"Put {counted(len(report.assignment.split_of), 'identity', 'identities')} to splits.")
-            self.desk.said.emit(self.desk.last_act())
+            self.desk.acted()
 
         self.desk.start("Putting the split into force", task, then, key="split")
 

@@ -263,7 +263,16 @@ class StartPage(Page):
     def _see_regatta(self, folder: Path) -> None:
         if self._at_work():
             return
-        self.desk.work.add(Job(_DRAWING, partial(_regatta, folder), self._drawn, self._over, key="intake"))
+        self.desk.work.add(
+            Job(
+                _DRAWING,
+                partial(_regatta, folder),
+                self._drawn,
+                self._over,
+                key="intake",
+                stopped="drawn anew next time",
+            )
+        )
         self.advised.emit("The regatta is being drawn; it opens by itself. Ctrl+. stops it.")
 
     def _drawn(self, ledger: Path) -> None:
