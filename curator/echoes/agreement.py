@@ -22,11 +22,14 @@ _SMOOTHED = 1.0
 """Pixels. Smoothed once they lie over each other, so that differing resampling of fine texture does not count."""
 _NOISE = 1.0
 """Grey values: texture weaker than this is noise of the coding."""
-_TEXTURED = 0.15
+_TEXTURED = 0.25
 """Blocks with less than this share of the photo's usual texture have nothing to agree on."""
 _LEAST_WHOLE = 0.4
 """Share of the blocks that must be seen whole in both photos."""
-_LEAST_TEXTURED = 8
+_LEAST_TEXTURED, _LEAST_INNER = 8, 10
+"""Blocks with something to agree on, and those of them off the rim: two dark photos in a like frame share the frame."""
+_LEAST_INNER_AGREEING = 0.5
+"""Share of the blocks off the rim that must not be passed over, for the same reason."""
 _UNLIKE = 0.5
 """Correlation below which a block does not agree at all."""
 _PASSED_OVER = 0.3
@@ -50,7 +53,9 @@ def block_agreement(a: _Reals, b: _Reals, seen: Bools) -> tuple[NDArray[np.float
     noise = _NOISE**2
     correlation = (common + noise) / np.sqrt((own + noise) * (other + noise))
     agreement, disagreeing = np.zeros(len(a)), np.ones(len(a))
+    inner, agreeing = (_off_the_rim(blocks) for blocks in (textured, textured & (correlation >= _UNLIKE)))
     enough = (whole.mean(axis=1) >= _LEAST_WHOLE) & (textured.sum(axis=1) >= _LEAST_TEXTURED)
+    enough &= (inner >= _LEAST_INNER) & (agreeing >= _LEAST_INNER_AGREEING * inner)
     for i in np.flatnonzero(enough):
         ordered = np.sort(correlation[i, textured[i]])
         unlike = int((ordered < _UNLIKE).sum())
@@ -66,6 +71,12 @@ def _blocks(photos: NDArray[Any]) -> NDArray[Any]:
     size = side // _BLOCKS
     cut = photos.reshape(n, _BLOCKS, size, _BLOCKS, size).swapaxes(2, 3)
     return cut.reshape(n, _BLOCKS * _BLOCKS, size * size)
+
+
+def _off_the_rim(blocks: Bools) -> NDArray[np.int64]:
+    """(n,): how many of the blocks (n, 64) lie off the rim."""
+    counted: NDArray[np.int64] = blocks.reshape(-1, _BLOCKS, _BLOCKS)[:, 1:-1, 1:-1].sum(axis=(1, 2))
+    return counted
 
 
 def _stands_out(power: _Reals, whole: Bools) -> Bools:

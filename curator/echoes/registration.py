@@ -39,6 +39,9 @@ _LEAST_COMMON = 0.4
 _HOPELESS = 0.7
 """Nearness of the best start below which nothing is settled: half of the candidates end here, cheaply."""
 
+_WORTH_TURNING, _SURE = 0.6, 0.985
+"""Agreement from which it is measured on the other photo's places too, and from which there is no need to."""
+
 
 @dataclass(frozen=True)
 class Registered:
@@ -92,14 +95,37 @@ def register_many(a: Sequence[Prepared], b: Sequence[Prepared]) -> list[Register
     firsts, seconds = [a[i] for i in hopeful], [b[i] for i in hopeful]
     each = np.arange(len(hopeful))
     matrix, _ = _climb([p.fine for p in firsts], [p.fine for p in seconds], each, matrix[hopeful])
-    values, seen = _sample(np.stack([p.grey for p in seconds]), each, matrix)
-    shape = (len(hopeful), FINE, FINE)
-    agreement, disagreeing = block_agreement(
-        np.stack([p.grey for p in firsts]), values.reshape(shape), seen.reshape(shape)
+    agreement, disagreeing = _agreement(firsts, seconds, matrix)
+    # A rim that one photo has and the other has not spoils the blocks it crosses, and only one of the photos has those.
+    back = np.flatnonzero((agreement >= _WORTH_TURNING) & (agreement < _SURE))
+    turned, turned_disagreeing = _agreement(
+        [seconds[i] for i in back], [firsts[i] for i in back], _inverse(matrix[back])
     )
+    better = turned > agreement[back]
+    agreement[back[better]], disagreeing[back[better]] = turned[better], turned_disagreeing[better]
     for place, row in enumerate(hopeful):
         found[row] = Registered(matrix[place].astype(np.float64), float(agreement[place]), float(disagreeing[place]))
     return found
+
+
+def _agreement(
+    firsts: Sequence[Prepared], seconds: Sequence[Prepared], matrix: _Reals
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Agreement and share of disagreeing blocks (n,), on the places of the first photos."""
+    if not firsts:
+        return np.zeros(0), np.ones(0)
+    values, seen = _sample(np.stack([p.grey for p in seconds]), np.arange(len(firsts)), matrix)
+    shape = (len(firsts), FINE, FINE)
+    return block_agreement(np.stack([p.grey for p in firsts]), values.reshape(shape), seen.reshape(shape))
+
+
+def _inverse(matrix: _Reals) -> _Reals:
+    """(n, 2, 3): the warps back. One that squeezes all into a line has none worth having, and stays what it is."""
+    whole = np.tile(np.eye(3), (len(matrix), 1, 1))
+    flat = np.abs(np.linalg.det(matrix[:, :, :2].astype(np.float64))) < 1e-3
+    whole[~flat, :2] = matrix[~flat]
+    inverse: _Reals = np.linalg.inv(whole)[:, :2].astype(np.float32)
+    return inverse
 
 
 def _evened(grey: _Reals, local: float) -> _Reals:

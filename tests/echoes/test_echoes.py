@@ -94,8 +94,8 @@ _FACTS = Facts("a", 100, 100, 100.0, 40.0)
         (Facts("b", 100, 100, 100, 40), (1.0, 0.1, 1.0), False, Change.RETOUCHED),
         (Facts("b", 90, 90, 100, 40), (1.0, 0.0, 1.1), False, Change.CROPPED),
         (Facts("b", 100, 100, 100, 40), (1.0, 0.0, 1.0), True, Change.MIRRORED),
-        (Facts("b", 100, 100, 100, 40), (BURST_FROM + 0.003, 0.0, 1.0), False, Change.BURST),
-        (Facts("b", 100, 100, 100, 40), (BURST_FROM + 0.003, 0.0, 1.0), True, None),
+        (Facts("b", 100, 100, 100, 40), (BURST_FROM + 0.001, 0.0, 1.0), False, Change.BURST),
+        (Facts("b", 100, 100, 100, 40), (BURST_FROM + 0.001, 0.0, 1.0), True, None),
         (Facts("b", 100, 100, 100, 40), (0.9, 0.0, 1.0), False, None),
     ],
 )

@@ -87,6 +87,15 @@ def test_most_labels_on_crops_are_seen_through(folders: dict[str, list[Image.Ima
     assert sum(one.agreement >= COPY_FROM and one.disagreeing > 0.05 for one in found) >= 0.8 * len(found)
 
 
+def test_a_rim_that_one_photo_has_does_not_part_them(folders: dict[str, list[Image.Image]]) -> None:
+    shots = [photos[0] for photos in folders.values()]
+    originals = [_prepared(shot) for shot in shots]
+    for rimmed in (lambda image: ImageOps.expand(image, 15, fill="white"), lambda image: image.rotate(4)):
+        copies = [_prepared(rimmed(shot)) for shot in shots]
+        for found in (register_many(originals, copies), register_many(copies, originals)):
+            assert sum(one.agreement >= COPY_FROM for one in found) >= 0.8 * len(found)
+
+
 def test_other_shots_of_a_person_are_no_copies(folders: dict[str, list[Image.Image]]) -> None:
     first, second = [], []
     for photos in folders.values():
