@@ -101,7 +101,8 @@ def register_many(a: Sequence[Prepared], b: Sequence[Prepared]) -> list[Register
     turned, turned_disagreeing = _agreement(
         [seconds[i] for i in back], [firsts[i] for i in back], _inverse(matrix[back])
     )
-    better = turned > agreement[back]
+    # Other shots of a person are looked at twice like this: only a clear answer may speak for a second time.
+    better = turned >= _SURE
     agreement[back[better]], disagreeing[back[better]] = turned[better], turned_disagreeing[better]
     for place, row in enumerate(hopeful):
         found[row] = Registered(matrix[place].astype(np.float64), float(agreement[place]), float(disagreeing[place]))

@@ -13,7 +13,7 @@ COPY_FROM = 0.98
 """Agreement from which two photos are one shot. On a drawn set other than the demo's 96 in a hundred copies of 28
 changes gave more, save for light that is clipped and coding at quality 10; of the other shots of one person that were
 registered the highest gave .979."""
-BURST_FROM = 0.977
+BURST_FROM = 0.97
 """Agreement from which two photos are taken for frames of one moment. Most bursts agree no better than other shots of
 the person do: this finds the clearest of them, and the copies changed most harshly."""
 _MOVED = 0.03
