@@ -13,6 +13,7 @@ from curator.domain import Bools
 
 _SIDE = 8
 _OVERSAMPLING = 4
+_MIDDLE = _SIDE * _SIDE // 2
 
 
 def packed(bits: Bools) -> int:
@@ -36,7 +37,9 @@ def dct_hash(grey: Image.Image) -> int:
 
     # The package imagehash uses, in the same order: a matrix product differs on flat and gradient pictures.
     low = dct(dct(pixels, axis=0), axis=1)[:_SIDE, :_SIDE]
-    return packed(low > np.median(low))
+    # The median of an even number of values is the mean of the middle two; numpy's own takes longer than both DCTs.
+    middle = np.partition(low, (_MIDDLE - 1, _MIDDLE), axis=None)[_MIDDLE - 1 : _MIDDLE + 1].mean()
+    return packed(low > middle)
 
 
 def difference_hash(grey: Image.Image) -> int:

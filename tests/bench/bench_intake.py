@@ -2,8 +2,8 @@
 
 Run with `python tests/bench/bench_intake.py`. Subjects are the drawn portraits of `demo_faces/`, each twelve times
 under digests of its own. The reference is two processes that run only the two onnxruntime sessions, over just the
-pyramid levels and crops that intake gives them. Intake is meant to reach 70 % of it, start of its processes included. Beside
-the rates stands the processor time a photo, which says more where something else is running.
+pyramid levels and crops that intake gives them. Intake is meant to reach 70 % of it, start of its processes included.
+Beside the rates stands the processor time a photo, which says more where something else is running.
 """
 
 from __future__ import annotations
