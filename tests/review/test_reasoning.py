@@ -93,10 +93,8 @@ class Slow:
         given = {(a, b), (b, a)} & (self.ties | self.bars)
         raw = (self.same(a, b, "raw"), self.bar_length(a, b, "raw") is not None)
         sound = (self.same(a, b), self.bar_length(a, b) is not None)
-        if given:
-            answer = SAME if given & self.ties else DIFFERENT
-        else:
-            answer = SAME if sound[0] else DIFFERENT if sound[1] else None
+        follows = SAME if sound[0] else DIFFERENT if sound[1] else None
+        answer = (SAME if given & self.ties else DIFFERENT) if given else follows
         return Known(answer, bool(given), raw != sound)
 
     def n_known(self) -> int:
@@ -239,6 +237,26 @@ def test_a_photo_moves_to_the_people_it_is_tied_to() -> None:
     one = reason(torn, ROLL, typical={"bram/1", "cleo/1"})
     assert one.merges == (("bram", "cleo"),)
     assert one.moves == (Move("anna/1", "anna", "bram"),)
+
+
+def test_a_photo_tied_to_one_in_a_contradiction_stays() -> None:
+    pairs = {("anna/1", "bram/1"): SAME, ("anna/1", "cleo/1"): SAME}
+    photos = {"anna/1": DOES_NOT, "bram/1": DOES_NOT}
+    assert reason(Settled(pairs, photos), ROLL).moves == (
+        Move("anna/1", "anna", "cleo"),
+        Move("bram/1", "bram", "cleo"),
+    )
+    slip = Settled({**pairs, ("bram/1", "bram/2"): DIFFERENT}, {**photos, "bram/1": BELONGS, "bram/2": BELONGS})
+    assert reason(slip, ROLL).moves == ()
+
+
+def test_no_photo_moves_into_another_name_of_the_identity_it_left() -> None:
+    pairs = {("anna/2", "bram/2"): SAME, ("anna/1", "bram/1"): SAME}
+    settled = Settled(pairs, {"anna/1": DOES_NOT})
+    assert reason(settled, ROLL).moves == (Move("anna/1", "anna", "bram"),)
+    one = reason(settled, ROLL, typical={"anna/2", "bram/2"})
+    assert one.merges == (("anna", "bram"),)
+    assert one.moves == ()
 
 
 def test_filing_alone_proves_nothing() -> None:
