@@ -25,7 +25,7 @@ def main(argv: Sequence[str] | None = None) -> int:
     interrupted."""
     _ready_streams()
     options = parser().parse_args(argv)
-    with _ended_by_interrupts():
+    with _ended_by_interrupts(for_good=argv is None):
         return _run(options, debug=getattr(options, "debug", False))
 
 
@@ -61,11 +61,12 @@ def _ready_streams() -> None:
 
 
 @contextmanager
-def _ended_by_interrupts() -> Iterator[None]:
+def _ended_by_interrupts(*, for_good: bool) -> Iterator[None]:
     """Ctrl-C ends the program at once wherever no progress is shown; `showing.progress` answers it more gently.
 
     Not by an exception: one that is raised inside an import comes out as an error of the library's. What is written
-    without progress is one transaction of the ledger, which bears being killed.
+    without progress is one transaction of the ledger, which bears being killed. `for_good`: while the program winds
+    up, a second Ctrl-C changes nothing.
     """
     if threading.current_thread() is not threading.main_thread():
         yield
@@ -79,7 +80,8 @@ def _ended_by_interrupts() -> Iterator[None]:
     try:
         yield
     finally:
-        signal.signal(signal.SIGINT, before)
+        # A handler of ours would be dropped before the very end, and the default one ends the program without a code.
+        signal.signal(signal.SIGINT, signal.SIG_IGN if for_good else before)
 
 
 def _told(error: Exception, code: int, debug: bool) -> int:
