@@ -21,6 +21,24 @@ def cohen_kappa(table: Ints) -> float | None:
     return None if chance >= 1 - 1e-12 else (observed - chance) / (1 - chance)
 
 
+def cohen_error(table: Ints) -> float | None:
+    """The asymptotic standard error of Cohen's kappa of a square table (Fleiss, Cohen and Everitt 1969)."""
+    kappa = cohen_kappa(table)
+    if kappa is None:
+        return None
+    counts = np.asarray(table, dtype=np.float64)
+    share = counts / counts.sum()
+    # Row i, column j of these margins: the first annotator's share of j plus the second's share of i.
+    margins = share.sum(axis=1)[None, :] + share.sum(axis=0)[:, None]
+    agreed = np.diag(share)
+    chance = float(share.sum(axis=0) @ share.sum(axis=1))
+    on = float((agreed * (1 - np.diag(margins) * (1 - kappa)) ** 2).sum())
+    off = (1 - kappa) ** 2 * float((share * margins**2).sum() - (agreed * np.diag(margins) ** 2).sum())
+    variance = (on + off - (kappa - chance * (1 - kappa)) ** 2) / (1 - chance) ** 2 / counts.sum()
+    # Without dissent the terms cancel, but for rounding.
+    return float(np.sqrt(max(variance, 0.0)))
+
+
 def fleiss_kappa(counts: Ints) -> float | None:
     """Fleiss' kappa (1971) of subjects by categories, each row summing to the same number (2 or more) of raters."""
     table = np.asarray(counts, dtype=np.float64)

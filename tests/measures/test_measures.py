@@ -5,10 +5,10 @@ from itertools import combinations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from curator.measures.agreement import cohen_kappa, krippendorff_alpha
+from curator.measures.agreement import cohen_error, cohen_kappa, krippendorff_alpha
 from curator.measures.counting import all_pairs, mated_pairs, non_mated_pairs
 from curator.measures.intervals import clopper_pearson, wilson
 from curator.measures.rates import equal_error_rate, error_rates
@@ -43,6 +43,7 @@ def test_no_scores_no_rates() -> None:
 
 
 @given(st.integers(1, 400).flatmap(lambda n: st.tuples(st.integers(0, n), st.just(n))), st.sampled_from([0.9, 0.95]))
+@settings(deadline=None)  # The first interval waits for scipy to load.
 def test_intervals_hold_the_proportion_and_mirror(case: tuple[int, int], confidence: float) -> None:
     k, n = case
     for interval in (wilson, clopper_pearson):
@@ -82,3 +83,18 @@ def test_agreement_never_exceeds_one_and_is_one_only_without_dissent(said: list[
             assert (value > 1 - 1e-12) == all(a == b for a, b in said)
     if alpha is None:
         assert len({label for pair in said for label in pair}) == 1
+
+
+def test_the_error_of_kappa_is_the_spread_of_kappas() -> None:
+    """Many tables drawn at random from one: their kappas spread as the asymptotic error says."""
+    shares = np.array([[0.30, 0.05, 0.02], [0.10, 0.25, 0.03], [0.05, 0.02, 0.18]])
+    drawn = np.random.default_rng(7).multinomial(2000, shares.ravel(), size=3000).reshape(-1, 3, 3)
+    spread = np.std(np.array([cohen_kappa(table) for table in drawn], dtype=np.float64))
+    error = cohen_error(np.round(shares * 2000).astype(np.int64))
+    assert error == pytest.approx(spread, rel=0.05)
+
+
+def test_without_dissent_kappa_has_no_error_and_undefined_it_has_none() -> None:
+    assert cohen_error(np.array([[6, 0], [0, 3]])) == pytest.approx(0, abs=1e-7)
+    assert cohen_error(np.array([[7, 0], [0, 0]])) is None
+    assert cohen_error(np.zeros((2, 2), dtype=np.int64)) is None

@@ -4,7 +4,7 @@ from itertools import combinations, pairwise, product
 
 import numpy as np
 import pytest
-from hypothesis import assume, given
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
 from curator.domain import PairAnswer, PhotoAnswer, Roll
@@ -28,6 +28,7 @@ def roll_of(photos: tuple[str, ...]) -> Roll:
     return Roll(photos, ("",) * len(photos), tuple(folders), filed, {})
 
 
+# Tests against the slow closure have no deadline: it tries every chain, and the first of them waits for scipy.
 ROLL = roll_of(PHOTOS)
 PAIR_ANSWERS = st.dictionaries(st.sampled_from(PAIRS), st.sampled_from(PairAnswer), max_size=12)
 PHOTO_ANSWERS = st.dictionaries(st.sampled_from(PHOTOS), st.sampled_from(PhotoAnswer), max_size=5)
@@ -108,6 +109,7 @@ def ask(reasoned: Reasoned, a: str, b: str) -> Known:
 
 
 @given(SETTLED)
+@settings(deadline=None)
 def test_every_two_are_answered_as_by_definition(settled: Settled) -> None:
     slow, reasoned = Slow(settled), reason(settled, ROLL)
     for a, b in combinations(slow.nodes, 2):
@@ -119,12 +121,14 @@ def test_every_two_are_answered_as_by_definition(settled: Settled) -> None:
 
 
 @given(SETTLED)
+@settings(deadline=None)
 def test_nothing_that_follows_contradicts_what_follows(settled: Settled) -> None:
     slow = Slow(settled)
     assert not any(slow.same(a, b) and slow.bar_length(a, b) is not None for a, b in combinations(slow.nodes, 2))
 
 
 @given(SETTLED)
+@settings(deadline=None)
 def test_every_contradiction_is_found_with_a_shortest_chain(settled: Settled) -> None:
     slow, reasoned = Slow(settled), reason(settled, ROLL)
     found = list(reasoned.contradictions())
@@ -148,6 +152,7 @@ def walked(start: str, chain: tuple[Said, ...]) -> str:
 
 
 @given(SETTLED)
+@settings(deadline=None)
 def test_why_is_a_shortest_chain_of_verdicts(settled: Settled) -> None:
     slow, reasoned = Slow(settled), reason(settled, ROLL)
     for a, b in PAIRS:
@@ -165,6 +170,7 @@ def test_why_is_a_shortest_chain_of_verdicts(settled: Settled) -> None:
 
 
 @given(SETTLED, st.sampled_from(PAIRS), st.sampled_from([SAME, DIFFERENT]))
+@settings(deadline=None)
 def test_an_answer_settles_as_many_pairs_as_it_makes_known(settled: Settled, pair: Edge, answer: PairAnswer) -> None:
     assume(settled.pairs.get(pair, CANNOT_TELL) == CANNOT_TELL)
     before, reasoned = Slow(settled), reason(settled, ROLL)
@@ -179,6 +185,7 @@ def test_an_answer_settles_as_many_pairs_as_it_makes_known(settled: Settled, pai
 
 
 @given(SETTLED, st.sets(st.sampled_from(PHOTOS)), st.randoms())
+@settings(deadline=None)
 def test_the_order_of_verdicts_never_matters(settled: Settled, typical: set[str], random) -> None:  # type: ignore[no-untyped-def]
     pairs, photos = list(settled.pairs.items()), list(settled.photos.items())
     random.shuffle(pairs)
@@ -190,6 +197,7 @@ def test_the_order_of_verdicts_never_matters(settled: Settled, typical: set[str]
 
 
 @given(SETTLED, st.sets(st.sampled_from(PHOTOS)))
+@settings(deadline=None)
 def test_merges_and_moves_as_by_definition(settled: Settled, typical: set[str]) -> None:
     slow, reasoned = Slow(settled), reason(settled, ROLL, typical)
     at_home = {photo: slow.known(photo, photo.split("/")[0]) for photo in PHOTOS}
@@ -282,6 +290,7 @@ def test_a_photo_and_an_identity_of_one_name_are_two() -> None:
 
 
 @given(st.data())
+@settings(deadline=None)
 def test_suspect_ties_are_those_on_simple_chains_in_any_graph(data: st.DataObject) -> None:
     """Denser graphs than photos and folders make: the blocks of a depth-first tree against all simple chains."""
     n = data.draw(st.integers(2, 6))
