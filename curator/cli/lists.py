@@ -41,6 +41,7 @@ def verdicts(options: Namespace) -> int:
         (name, "undefined" if value is None else f"{value:.4f}")
         for name, value in (
             ("Cohen's kappa", report.cohen),
+            ("its standard error", report.cohen_error),
             ("Fleiss' kappa", report.fleiss),
             ("Krippendorff's alpha", report.krippendorff),
         )

@@ -14,6 +14,7 @@ from curator.domain import Doubt, DoubtKind, EchoGroup, Ints, PhotoAnswer, Roll
 from curator.pairs.mining import hard_mated, hard_non_mated
 from curator.pairs.similarity import between
 from curator.pairs.trust import TrustModel
+from curator.review.reasoning import Reasoned, reason
 from curator.verdicts import Settled, pair_key
 
 _POOL = 3
@@ -63,14 +64,18 @@ class Matter:
     settled: Settled
     same_shot: Mapping[str, frozenset[str]]
     """Photo to the echo groups it is in: one of copies at most, and any number of bursts."""
+    follows: Reasoned
+    """What the verdicts imply."""
     answered: bool
     """Ask pairs with a standing verdict too."""
 
     def may_ask(self, a: str, b: str) -> bool:
-        """Whether two photos are a pair worth a person's time: not of one shot, and not answered yet."""
+        """Whether two photos are a pair worth a person's time: not of one shot, and with no answer, said or implied."""
         if a == b or self.same_shot.get(a, frozenset()) & self.same_shot.get(b, frozenset()):
             return False
-        return self.answered or pair_key(a, b) not in self.settled.pairs
+        if self.answered:
+            return True
+        return pair_key(a, b) not in self.settled.pairs and self.follows.photos(a, b).answer is None
 
 
 def matter_of(
@@ -91,7 +96,7 @@ def matter_of(
         for photo in group.photos:
             groups[photo].add(group.id)
     same_shot = {photo: frozenset(ids) for photo, ids in groups.items()}
-    return Matter(roll, trust, photos, doubts, settled, same_shot, answered)
+    return Matter(roll, trust, photos, doubts, settled, same_shot, reason(settled, roll), answered)
 
 
 def questions(matter: Matter, order: Order, limit: int, rng: np.random.Generator) -> tuple[Question, ...]:

@@ -16,7 +16,7 @@ from curator.doubts.step import find_doubts
 from curator.echoes.step import find_echoes
 from curator.errors import BadInput
 from curator.ledger import Ledger
-from curator.measures.agreement import cohen_kappa, fleiss_kappa, krippendorff_alpha
+from curator.measures.agreement import cohen_error, cohen_kappa, fleiss_kappa, krippendorff_alpha
 from curator.pairs.step import load_trust
 from curator.progress import Progress
 from curator.review.questions import Matter, Order, Question, about, matter_of
@@ -91,7 +91,9 @@ class AgreementReport:
     items: int
     """Pairs and photos answered by two or more."""
     cohen: float | None
-    """Of the two annotators, where there are just two."""
+    """Cohen's kappa of the two annotators, where there are just two."""
+    cohen_error: float | None
+    """Its asymptotic standard error."""
     fleiss: float | None
     """Over the items that all annotators answered, where there are three or more."""
     krippendorff: float | None
@@ -125,6 +127,7 @@ def agreement(ledger: Ledger) -> AgreementReport:
         annotators=annotators,
         items=len(shared),
         cohen=cohen_kappa(table) if len(annotators) == 2 else None,
+        cohen_error=cohen_error(table) if len(annotators) == 2 else None,
         fleiss=fleiss_kappa(counts) if len(annotators) > 2 else None,
         krippendorff=krippendorff_alpha(shared),
         conflicts=settled.contested_pairs + tuple((photo, "") for photo in settled.contested_photos),

@@ -165,3 +165,14 @@ def test_a_sample_of_all_mated_pairs_is_all_of_them(sizes: list[int], seed: int)
     }
     assert set(zip(i.tolist(), j.tolist(), strict=True)) == slow
     assert len(i) == len(slow)
+
+
+def test_what_follows_from_verdicts_is_not_asked(made_ledger: MadeLedger) -> None:
+    with made_ledger() as ledger:
+        a, b, c = (name for name, _ in ledger.photos_of(ledger.roll().identities[0])[:3])
+        before = questions(ledger, Order.HARDEST_MATED, limit=400, progress=Silent())
+        with ledger.writing():
+            ledger.put_verdicts([Verdict(a, b, PairAnswer.SAME, "ada", AT), Verdict(b, c, PairAnswer.SAME, "ada", AT)])
+        after = questions(ledger, Order.HARDEST_MATED, limit=400, progress=Silent())
+    asked = [{pair_key(q.photo_a, q.photo_b) for q in found} for found in (before, after)]
+    assert asked[0] - asked[1] == {pair_key(a, b), pair_key(b, c), pair_key(a, c)}
