@@ -50,6 +50,7 @@ class DoubtsPage(Page):
         self.list = QListView()
         self.list.setModel(self.model)
         self.list.setUniformItemSizes(True)
+        self.list.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.list.setAccessibleName("Doubts")
         self.list.selectionModel().currentChanged.connect(lambda _now, _before: self._doubt_chosen())
         self.kind = QComboBox()
@@ -336,10 +337,10 @@ class DoubtsPage(Page):
             return
         self.chart.show_counts(self._scale.edges, self._scale.mated, self._scale.non_mated, float(own))
         other = doubt.evidence.get("other_similarity")
-        more = f"; to the other, {other:.2f}" if other is not None else ""
-        self.measure.setText(
-            f"Its similarity to its own people is {own:.2f}{more}. Above the line lie the photos of this roll "
-            "against their own people, below it against strangers."
+        more = f", to the other {other:.2f}" if other is not None else ""
+        self.measure.setText(f"Similarity to its own people {own:.2f}{more}.")
+        self.measure.setToolTip(
+            "Above the line lie the photos of this roll against their own people, below it against strangers."
         )
 
     def _nothing(self) -> str:

@@ -46,6 +46,7 @@ class EchoesPage(Page):
         self.list = QListView()
         self.list.setModel(self.model)
         self.list.setUniformItemSizes(True)
+        self.list.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.list.setFixedWidth(_LIST)
         self.list.setAccessibleName("Groups of echoes")
         self.list.selectionModel().currentChanged.connect(lambda _now, _before: self._group_chosen())

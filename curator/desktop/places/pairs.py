@@ -6,7 +6,7 @@ import json
 from collections.abc import Sequence
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QVBoxLayout
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout
 
 from curator.desktop import theme
 from curator.desktop.desk import Desk
@@ -67,6 +67,10 @@ class PairsPage(Page):
         self.pace.setProperty("voice", "muted")
         self.why = QLabel()
         self.why.setWordWrap(True)
+        # No higher than its words, so that what is left is the photos'.
+        as_high_as_needed = QSizePolicy(QSizePolicy.Policy.Preferred, QSizePolicy.Policy.Fixed)
+        as_high_as_needed.setHeightForWidth(True)
+        self.why.setSizePolicy(as_high_as_needed)
         self.why.setFont(theme.serif(1.15))
         self.why.setAlignment(Qt.AlignmentFlag.AlignHCenter)
         self.told = QLabel()
