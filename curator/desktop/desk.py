@@ -18,6 +18,9 @@ from curator.domain import Act, EchoAnswer, EchoVerdict, PairAnswer, PhotoAnswer
 from curator.errors import PairwrightError
 from curator.ledger import Ledger
 
+_LONG_ROLL = 50_000
+"""Photos above which the places look only when a person asks them to."""
+
 
 class Desk(QObject):
     """One per window. Places speak to it and never to one another."""
@@ -122,6 +125,10 @@ class Desk(QObject):
             self.said.emit(act)
             self.told.emit(f"{_capital(name)}.")
         return act
+
+    def looks_by_itself(self) -> bool:
+        """Whether places may begin long looks unasked: not without a ledger, and not on a very long roll."""
+        return self.ledger is not None and not self.ledger.more_photos_than(_LONG_ROLL)
 
     def acted(self) -> None:
         """A step has noted an act of its own, such as a split: nothing older can be restored over it."""

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from curator.domain import Change, EchoGroup, EchoLink, Reading
+from curator.domain import Change, EchoGroup, EchoLink, Reading, Scope
 
 _DONE = {
     Change.IDENTICAL: "the same file",
@@ -12,6 +12,11 @@ _DONE = {
     Change.MIRRORED: "the same shot, mirrored",
     Change.RETOUCHED: "the same shot, retouched",
     Change.BURST: "two frames taken a moment apart",
+}
+_SCOPES = {
+    Scope.WITHIN_IDENTITY: "one identity",
+    Scope.ACROSS_IDENTITIES: "across identities",
+    Scope.ACROSS_SPLITS: "across splits",
 }
 
 
@@ -27,12 +32,12 @@ def row_words(group: EchoGroup, settled: bool) -> str:
     first = f"{' and '.join(folders[:2])}" if folders else group.photos[0]
     more = f" and {len(folders) - 2} more" if len(folders) > 2 else ""
     mark = "settled · " if settled else ""
-    return f"{first}{more}\n{mark}{len(group.photos)} photos · {changes}"
+    return f"{first}{more}\n{mark}{_SCOPES[group.scope]} · {changes}"
 
 
-def facts_of(photo: str, reading: Reading | None, *, kept: bool) -> str:
-    """A photo beneath its picture, as rich text: whether it stays, its size in pixels and bytes."""
-    mark = "<b>keep</b> · " if kept else ""
+def facts_of(photo: str, reading: Reading | None, *, kept: bool, suggested: bool) -> str:
+    """A photo beneath its picture, as rich text: whether it stays, whether it was suggested to, its size."""
+    mark = ("<b>keep</b> · " if kept else "") + ("suggested · " if suggested else "")
     if reading is None:
         return f"{mark}{photo}"
     return f"{mark}{photo}<br>{reading.width} x {reading.height} pixels, {size(reading.file_bytes)}"

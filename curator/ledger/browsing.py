@@ -15,6 +15,10 @@ def identity_counts(record: Database) -> list[tuple[str, int]]:
     return sorted((str(identity), int(count)) for identity, count in rows)
 
 
+def more_photos_than(record: Database, n: int) -> bool:
+    return bool(record.rows("SELECT 1 FROM photo LIMIT 1 OFFSET ?", (n,)))
+
+
 def photos_of(record: Database, identity: str) -> list[tuple[str, str]]:
     rows = record.rows("SELECT name, digest FROM photo WHERE identity = ?", (identity,))
     return sorted((str(name), str(digest or "")) for name, digest in rows)

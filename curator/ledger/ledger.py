@@ -243,6 +243,10 @@ class Ledger:
         """Each identity with its number of photos, by name; fast however long the roll."""
         return _browsing.identity_counts(self._record)
 
+    def more_photos_than(self, n: int) -> bool:
+        """Whether the roll holds more than n photos; looks at no more than it must."""
+        return _browsing.more_photos_than(self._record, n)
+
     def roll_stamp(self) -> str:
         """A short text that changes with the roll and with what made its readings; cheap however long the roll."""
         return f"{self.maker} {_record.roll_turn(self._record)}"

@@ -6,7 +6,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 from PIL import Image
-from PySide6.QtCore import QPointF, QSize, Qt
+from PySide6.QtCore import QPoint, QPointF, QSize, Qt
 from pytestqt.qtbot import QtBot
 
 from curator.desktop.echoes_words import size
@@ -87,7 +87,7 @@ def test_groups_across_identities_come_first_and_say_what_they_are(window: Windo
         ("a/1.png", "a/2.png"),
         ("b/1.png", "b/2.png"),
     ]
-    assert page.model.index(0).data() == "c and d\n2 photos · mirrored"
+    assert page.model.index(0).data() == "c and d\nacross identities · mirrored"
     assert "mirrored" in page.title.text()
     assert window.header.buttons[page].text() == "Echoes  3"
 
@@ -97,6 +97,11 @@ def test_enter_keeps_the_marked_photo_and_goes_on(qtbot: QtBot, window: Window, 
     qtbot.keyClick(page.list, Key.Key_Down)
     assert "<b>keep</b>" in page.facts[0].text()
     qtbot.keyClick(page.list, Key.Key_2)
+    assert "<b>keep</b>" in page.facts[1].text()
+    assert "suggested" in page.facts[0].text()
+    qtbot.mouseClick(page.overlay, Qt.MouseButton.LeftButton, pos=QPoint(20, 50))
+    assert "<b>keep</b>" in page.facts[0].text()
+    qtbot.mouseClick(page.overlay, Qt.MouseButton.LeftButton, pos=QPoint(page.overlay.width() - 20, 50))
     assert "<b>keep</b>" in page.facts[1].text()
     qtbot.keyClick(page.list, Key.Key_Return)
     assert _said(echoes_ledger) == [("a/2.png", "a/1.png", EchoAnswer.KEEP_FIRST)]

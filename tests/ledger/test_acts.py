@@ -123,6 +123,7 @@ def test_a_part_of_the_roll_is_looked_at_without_the_rest(
     assert ledger.identity_counts() == [("a", 3), ("b", 1)]
     assert ledger.photos_of("a") == [("a/1.jpg", "a" * 64), ("a/2.jpg", "e" * 64), ("a/3.jpg", "")]
     assert ledger.photos_of("none") == []
+    assert [ledger.more_photos_than(n) for n in (0, 3, 4, 9)] == [True, True, False, False]
     assert ledger.attribute_values() == {"club": {"heron": 1, "weir": 1}}
     assert ledger.identities_with("club", "weir") == {"b"}
     assert ledger.attributes_of(["a/1.jpg", "a/2.jpg"]) == {"a/1.jpg": {"club": "heron", "season": ""}, "a/2.jpg": {}}

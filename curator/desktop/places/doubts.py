@@ -27,7 +27,6 @@ from curator.pairs.step import Scale, similarity_scale
 
 _LIST = 250
 _STRIP = 74
-_MOST_BY_ITSELF = 50_000
 _LATER_MS = 700
 _Found = tuple[list[Doubt], Scale | None]
 
@@ -139,7 +138,7 @@ class DoubtsPage(Page):
 
     def enter(self) -> None:
         self.list.setFocus()
-        if self._stale and self._small():
+        if self._stale and self.desk.looks_by_itself():
             self._fetch()
 
     def ledger_opened(self) -> None:
@@ -147,12 +146,12 @@ class DoubtsPage(Page):
         self._doubts, self._done, self._scale, self._evidence = [], set(), None, None
         self.model.put(())
         self._show()
-        if self.desk.ledger is not None and self._small():
+        if self.desk.looks_by_itself():
             self._fetch()
 
     def something_said(self) -> None:
         self._stale = True
-        if self.desk.ledger is not None and self._small():
+        if self.desk.looks_by_itself():
             self._later.start()
 
     def repaint_all(self) -> None:
@@ -167,10 +166,6 @@ class DoubtsPage(Page):
         ):
             self.buttons[key].setIcon(icon(name, colour))
         self.update()
-
-    def _small(self) -> bool:
-        ledger = self.desk.ledger
-        return ledger is not None and sum(count for _, count in ledger.identity_counts()) <= _MOST_BY_ITSELF
 
     def _fetch(self) -> None:
         self._stale = False
@@ -295,7 +290,7 @@ class DoubtsPage(Page):
     def _show(self) -> None:
         open_doubts = [doubt for doubt in self._doubts if not self._is_settled(doubt)]
         self.counted.emit(len(open_doubts))
-        self.look.setVisible(self.desk.ledger is not None and not self._small())
+        self.look.setVisible(self.desk.ledger is not None and not self.desk.looks_by_itself())
         doubt = self.present
         of_people = doubt is not None and doubt.kind in OF_PEOPLE
         for key, button in self.buttons.items():

@@ -21,8 +21,6 @@ from curator.echoes.step import find_echoes
 _MODES = ((Mode.BESIDE, "Beside", "N", "pairs"), (Mode.BLINK, "Blink", "K", "blink"), (Mode.WIPE, "Wipe", "W", "wipe"),
           (Mode.DIFFERENCE, "Difference", "F", "difference"))  # fmt: skip
 _LIST = 250
-_MOST_BY_ITSELF = 50_000
-"""Photos up to which the place looks by itself; a longer roll is looked over when a person asks for it."""
 _LATER_MS = 700
 
 
@@ -64,6 +62,7 @@ class EchoesPage(Page):
         self.which = QLabel()
         self.which.setProperty("voice", "muted")
         self.overlay = Overlay(desk)
+        self.overlay.chosen.connect(self._mark)
         self.facts = [QLabel(), QLabel()]
         self._later = QTimer(self)
         self._later.setSingleShot(True)
@@ -151,7 +150,7 @@ class EchoesPage(Page):
 
     def enter(self) -> None:
         self.list.setFocus()
-        if self._stale and self._small():
+        if self._stale and self.desk.looks_by_itself():
             self._fetch()
 
     def leave(self) -> None:
@@ -162,22 +161,18 @@ class EchoesPage(Page):
         self._groups, self._done = (), set()
         self.model.put(())
         self._show()
-        if self.desk.ledger is not None and self._small():
+        if self.desk.looks_by_itself():
             self._fetch()
 
     def something_said(self) -> None:
         self._stale = True
-        if self.desk.ledger is not None and self._small():
+        if self.desk.looks_by_itself():
             self._later.start()
 
     def repaint_all(self) -> None:
         for mode, _, _, name in _MODES:
             self.modes[mode].setIcon(icon(name, self.desk.palette.ink))
         self.update()
-
-    def _small(self) -> bool:
-        ledger = self.desk.ledger
-        return ledger is not None and sum(count for _, count in ledger.identity_counts()) <= _MOST_BY_ITSELF
 
     def _fetch(self) -> None:
         self._stale = False
@@ -308,7 +303,7 @@ class EchoesPage(Page):
     def _show(self) -> None:
         open_groups = [group for group in self._groups if not self._is_settled(group)]
         self.counted.emit(len(open_groups))
-        self.look.setVisible(self.desk.ledger is not None and not self._small())
+        self.look.setVisible(self.desk.ledger is not None and not self.desk.looks_by_itself())
         group, link = self._present(), self._present_link()
         for button in (*self.actions_, *self.modes.values()):
             button.setEnabled(link is not None)
@@ -323,7 +318,8 @@ class EchoesPage(Page):
         at = self._link % len(group.links) + 1
         self.which.setText(f"link {at} of {len(group.links)}" if len(group.links) > 1 else "")
         for label, photo in zip(self.facts, (link.a, link.b), strict=True):
-            label.setText(facts_of(photo, self._facts.get(photo), kept=photo == self._keep))
+            kept, suggested = photo == self._keep, photo == group.suggested_keep
+            label.setText(facts_of(photo, self._facts.get(photo), kept=kept, suggested=suggested))
         across = sum(other.scope != Scope.WITHIN_IDENTITY for other in open_groups)
         self.advised.emit(
             f"{across} open groups reach across identities: each hides a label error, or a person filed twice."

@@ -32,8 +32,6 @@ _WORDS = {PairAnswer.SAME: "same", PairAnswer.DIFFERENT: "different", PairAnswer
 _LIMIT = 500
 _SAMPLE = 200
 """After so many verdicts the random sample is drawn anew, so that it never runs dry of open pairs."""
-_MANY = 50_000
-"""Photos in the ledger above which questions are chosen when a person says so."""
 _AHEAD = 4
 _STRIP = 68
 _CONTEXT = 12
@@ -184,8 +182,7 @@ class PairsPage(Page):
         ledger = self.desk.ledger
         if not self._stale or ledger is None:
             return
-        many = sum(count for _, count in ledger.identity_counts()) > _MANY
-        if not many or self._asked:
+        if self.desk.looks_by_itself() or self._asked:
             self._look(keep=not self._asked)
         else:
             self._show()

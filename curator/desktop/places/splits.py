@@ -27,8 +27,6 @@ from curator.recipe import Recipe, recipe_toml
 from curator.splits.report import SplitReport
 from curator.splits.step import make_split, plan_split, present_split
 
-_LARGE = 50_000
-"""Photos from which nothing is looked at without being asked for."""
 _MOST_LINES = 40
 _FORM_WIDTH = 310
 
@@ -201,7 +199,7 @@ class SplitsPage(Page):
         self.desk.start("Putting the split into force", task, then, key="split")
 
     def _look_if_small(self) -> None:
-        if self.desk.ledger is not None and sum(n for _, n in self.desk.ledger.identity_counts()) <= _LARGE:
+        if self.desk.looks_by_itself():
             self._look()
 
     def _look(self) -> None:

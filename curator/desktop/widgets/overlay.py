@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from enum import Enum
 
-from PySide6.QtCore import QRectF, QSize, Qt, QTimer
+from PySide6.QtCore import QRectF, QSize, Qt, QTimer, Signal
 from PySide6.QtGui import QColor, QImage, QMouseEvent, QPainter, QPaintEvent, QTransform
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
@@ -34,6 +34,9 @@ def onto(link: EchoLink) -> QTransform:
 
 class Overlay(QWidget):
     """The photos of one echo link."""
+
+    chosen = Signal(int)
+    """One of two photos side by side was clicked: 0 for the first."""
 
     def __init__(self, desk: Desk) -> None:
         super().__init__()
@@ -156,6 +159,10 @@ class Overlay(QWidget):
             place = _fitted(QRectF(self.rect()), first)
             self.wipe = min(1.0, max(0.0, (event.position().x() - place.left()) / max(1.0, place.width())))
             self.update()
+
+    def mouseReleaseEvent(self, event: QMouseEvent) -> None:  # noqa: N802 - Qt's own name
+        if self.mode == Mode.BESIDE and self._link is not None:
+            self.chosen.emit(int(event.position().x() > self.width() / 2))
 
     def _blink(self) -> None:
         self._second = not self._second
