@@ -11,12 +11,12 @@ _AT_ONCE = 500
 
 
 def identity_counts(record: Database) -> list[tuple[str, int]]:
-    rows = record.rows("SELECT identity, count(*) FROM photo GROUP BY identity")
+    rows = record.rows("SELECT identity, photos FROM identity_count")
     return sorted((str(identity), int(count)) for identity, count in rows)
 
 
 def more_photos_than(record: Database, n: int) -> bool:
-    return bool(record.rows("SELECT 1 FROM photo LIMIT 1 OFFSET ?", (n,)))
+    return int(record.rows("SELECT total(photos) FROM identity_count")[0][0]) > n
 
 
 def photos_of(record: Database, identity: str) -> list[tuple[str, str]]:

@@ -191,3 +191,31 @@ def test_the_verdicts_on_a_few_photos_are_those_among_all(ledger: Ledger) -> Non
     slow = [v for v in ledger.verdicts() if not v.photo_b and v.photo_a in asked]
     assert ledger.photo_verdicts_of(asked) == slow
     assert len(slow) == 2
+
+
+@settings(max_examples=40, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(
+    steps=st.lists(
+        st.one_of(
+            st.tuples(st.just("put"), st.integers(0, 5), st.sampled_from("abc")),
+            st.tuples(st.just("take off"), st.integers(0, 5), st.just("")),
+        ),
+        max_size=15,
+    )
+)
+def test_the_counts_of_identities_follow_the_roll(
+    tmp_path: Path, root: Path, steps: list[tuple[str, int, str]]
+) -> None:
+    filed: dict[int, str] = {}
+    with Ledger.create(tmp_path / f"ledger-{len(list(tmp_path.iterdir()))}", root) as ledger, ledger.writing():
+        for what, number, identity in steps:
+            raw = f"{number}".encode()
+            if what == "put":
+                file = PhotoFile(raw, f"{identity}/{number}", identity, 1, 1, "d" * 64)
+                ledger.put_chunk([file], [], maker="m")
+                filed[number] = identity
+            else:
+                ledger.remove_files([raw])
+                filed.pop(number, None)
+            slow = sorted((name, list(filed.values()).count(name)) for name in set(filed.values()))
+            assert ledger.identity_counts() == slow
