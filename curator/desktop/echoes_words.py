@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from curator.desktop.amounts import size
 from curator.domain import Change, EchoGroup, EchoLink, Reading, Scope
 
 _DONE = {
@@ -41,8 +42,3 @@ def facts_of(photo: str, reading: Reading | None, *, kept: bool, suggested: bool
     if reading is None:
         return f"{mark}{photo}"
     return f"{mark}{photo}<br>{reading.width} x {reading.height} pixels, {size(reading.file_bytes)}"
-
-
-def size(n_bytes: int) -> str:
-    """Bytes as one reads them."""
-    return f"{n_bytes / 1e6:.1f} MB" if n_bytes >= 1e6 else f"{n_bytes / 1e3:.0f} kB"

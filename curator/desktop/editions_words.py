@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from datetime import datetime
 
-from curator.desktop.splits_words import counted, named
+from curator.desktop.amounts import counted, named
 from curator.desktop.widgets.charts import Bar, Cut
 from curator.editions.audit_report import AuditReport
 from curator.editions.plan import EditionPlan

@@ -8,8 +8,9 @@ from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QListWidget, QSizePolicy, QVBoxLayout, QWidget
 
 from curator.desktop import theme
+from curator.desktop.amounts import named
 from curator.desktop.desk import Desk
-from curator.desktop.splits_words import group_line, named
+from curator.desktop.splits_words import group_line
 from curator.desktop.widgets.strip_of_photos import StripOfPhotos
 from curator.splits.report import TiedGroup
 from curator.splits.ties import Tie

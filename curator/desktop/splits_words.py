@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
+from curator.desktop.amounts import counted, named
 from curator.desktop.widgets.charts import Bar
 from curator.splits.report import SplitReport, TiedGroup
-
-_MOST = 8
 
 
 def headline(report: SplitReport) -> str:
@@ -74,14 +73,3 @@ def short_lines(report: SplitReport) -> list[str]:
 def open_matters(report: SplitReport) -> int:
     """Leaks, and identities in no split that are not left out on purpose."""
     return report.leaks + max(0, len(report.in_no_split) - len(report.conflicts))
-
-
-def named(names: tuple[str, ...] | list[str], most: int = _MOST) -> str:
-    """The first few names, and how many more there are."""
-    more = len(names) - most
-    return ", ".join(names[:most]) + (f" and {more:,} more" if more > 0 else "")
-
-
-def counted(count: int, one: str, many: str = "") -> str:
-    """A number with its noun: 1 leak, 2 leaks."""
-    return f"{count:,} {one if count == 1 else many or one + 's'}"

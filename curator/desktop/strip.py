@@ -5,6 +5,7 @@ from __future__ import annotations
 from PySide6.QtCore import Qt, QTimer
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QProgressBar, QPushButton, QSizePolicy, QWidget
 
+from curator.desktop.amounts import span
 from curator.desktop.desk import Desk
 
 _TOLD_MS = 12_000
@@ -107,11 +108,3 @@ class Strip(QWidget):
         if work.waiting:
             parts.append(f"{work.waiting} more to come")
         return ", ".join(parts)
-
-
-def span(seconds: float) -> str:
-    """A length of time as one reads it aloud: 40 s, 3 min, 2 h 5 min."""
-    if seconds < 60:
-        return f"{max(1, round(seconds))} s"
-    minutes = round(seconds / 60)
-    return f"{minutes} min" if minutes < 60 else f"{minutes // 60} h {minutes % 60} min"

@@ -9,7 +9,7 @@ from PIL import Image
 from PySide6.QtCore import QPoint, QPointF, QSize, Qt
 from pytestqt.qtbot import QtBot
 
-from curator.desktop.echoes_words import size
+from curator.desktop.amounts import size
 from curator.desktop.places.echoes import EchoesPage
 from curator.desktop.widgets.overlay import Mode, onto
 from curator.desktop.window import Window

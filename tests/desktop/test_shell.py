@@ -10,9 +10,9 @@ from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QProgressBar
 from pytestqt.qtbot import QtBot
 
+from curator.desktop.amounts import span
 from curator.desktop.app import write_report
 from curator.desktop.palette import DARK, GROUNDS, LIGHT, TEXTS, Palette, contrast
-from curator.desktop.strip import span
 from curator.desktop.window import Window
 from curator.desktop.work import Counter
 from curator.domain import PairAnswer, PhotoAnswer

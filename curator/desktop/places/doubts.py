@@ -5,16 +5,15 @@ from __future__ import annotations
 import json
 from functools import partial
 
-from PySide6.QtCore import Qt, QTimer
-from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QListView, QPushButton, QVBoxLayout, QWidget
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QVBoxLayout
 
 from curator.desktop import theme
 from curator.desktop.desk import Desk
 from curator.desktop.doubts_evidence import Evidence, evidence_of
 from curator.desktop.doubts_words import OF_PEOPLE, answer_if_right, ordered, row_words, sentence
 from curator.desktop.icons import icon
-from curator.desktop.models.rows import RowsModel
-from curator.desktop.page import Page
+from curator.desktop.matters import MattersPage
 from curator.desktop.widgets.charts import TwoSided
 from curator.desktop.widgets.photo_pane import PhotoPane, View
 from curator.desktop.widgets.strip_of_photos import StripOfPhotos
@@ -25,39 +24,28 @@ from curator.errors import BadInput
 from curator.ledger import Ledger
 from curator.pairs.step import Scale, similarity_scale
 
-_LIST = 250
 _STRIP = 74
-_LATER_MS = 700
 _Found = tuple[list[Doubt], Scale | None]
 
 
-class DoubtsPage(Page):
+class DoubtsPage(MattersPage):
     """Doubts on the left, the evidence of the chosen one on the right."""
 
     name = "Doubts"
     icon = "doubts"
+    matters = "doubts"
     purpose = "Settle what the machine suspects, the surest first."
 
     def __init__(self, desk: Desk) -> None:
-        super().__init__(desk)
-        self._stale = True
+        super().__init__(desk, lambda doubt: row_words(doubt, self._is_settled(doubt)))
         self._doubts: list[Doubt] = []
         self._done: set[tuple[DoubtKind, tuple[str, ...]]] = set()
         self._scale: Scale | None = None
         self._evidence: Evidence | None = None
-        self.model = RowsModel(lambda doubt: row_words(doubt, self._is_settled(doubt)))
-        self.list = QListView()
-        self.list.setModel(self.model)
-        self.list.setUniformItemSizes(True)
-        self.list.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.list.setAccessibleName("Doubts")
-        self.list.selectionModel().currentChanged.connect(lambda _now, _before: self._doubt_chosen())
         self.kind = QComboBox()
         self.kind.addItems(["every kind", *(kind.value.replace("-", " ") for kind in DoubtKind)])
         self.kind.setAccessibleName("Kind of doubt")
-        self.all = QPushButton("Settled too")
-        self.look = QPushButton("Look for doubts")
-        self.look.setProperty("weight", "main")
         self.title = QLabel()
         self.title.setFont(theme.serif(1.15))
         self.title.setWordWrap(True)
@@ -69,13 +57,8 @@ class DoubtsPage(Page):
         self.measure = QLabel()
         self.measure.setProperty("voice", "muted")
         self.measure.setWordWrap(True)
-        self._later = QTimer(self)
-        self._later.setSingleShot(True)
-        self._later.setInterval(_LATER_MS)
-        self._later.timeout.connect(self._fetch)
         self._commands()
         self._lay_out()
-        self.kind.currentIndexChanged.connect(lambda _: self._filter())
         self._show()
 
     # -- making it
@@ -97,17 +80,8 @@ class DoubtsPage(Page):
         action("P", "Ask in Pairs", "Ask the two photos in Pairs", self._ask)
         self.buttons["S"].setProperty("voice", "same")
         self.buttons["D"].setProperty("voice", "different")
-        self.switch(self.all, "Show settled doubts too", "A", self._filter)
-        self.all.setFocusPolicy(Qt.FocusPolicy.TabFocus)
-        self.bind(self.look, self.command("Look for doubts", "L", self._fetch))
 
     def _lay_out(self) -> None:
-        holder = QWidget()
-        holder.setFixedWidth(_LIST)
-        left = QVBoxLayout(holder)
-        left.setContentsMargins(0, 0, 0, 0)
-        for widget in (self.kind, self.all, self.list, self.look):
-            left.addWidget(widget)
         photos = QHBoxLayout()
         photos.setSpacing(14)
         for pane in self.panes:
@@ -131,28 +105,13 @@ class DoubtsPage(Page):
         row = QHBoxLayout(self)
         row.setContentsMargins(20, 4, 20, 10)
         row.setSpacing(18)
-        row.addWidget(holder)
+        row.addWidget(self.side((self.kind,)))
         row.addLayout(right, 1)
 
     # -- being told
 
-    def enter(self) -> None:
-        self.list.setFocus()
-        if self._stale and self.desk.looks_by_itself():
-            self._fetch()
-
-    def ledger_opened(self) -> None:
-        self._stale = True
+    def forget(self) -> None:
         self._doubts, self._done, self._scale, self._evidence = [], set(), None, None
-        self.model.put(())
-        self._show()
-        if self.desk.looks_by_itself():
-            self._fetch()
-
-    def something_said(self) -> None:
-        self._stale = True
-        if self.desk.looks_by_itself():
-            self._later.start()
 
     def repaint_all(self) -> None:
         palette = self.desk.palette
@@ -167,7 +126,7 @@ class DoubtsPage(Page):
             self.buttons[key].setIcon(icon(name, colour))
         self.update()
 
-    def _fetch(self) -> None:
+    def fetch(self) -> None:
         self._stale = False
 
         def task(ledger: Ledger, progress: Counter) -> _Found:
@@ -182,15 +141,14 @@ class DoubtsPage(Page):
     def _found(self, found: _Found) -> None:
         self._doubts, self._scale = found
         self._done.clear()
-        self._filter()
+        self.filter()
 
     # -- the list
 
     def _is_settled(self, doubt: Doubt) -> bool:
         return doubt.settled or (doubt.kind, doubt.photos) in self._done
 
-    def _filter(self) -> None:
-        present = self.present
+    def filter(self) -> None:
         kinds = list(DoubtKind)
         kind = kinds[self.kind.currentIndex() - 1] if self.kind.currentIndex() else None
         shown = [
@@ -198,22 +156,15 @@ class DoubtsPage(Page):
             for doubt in self._doubts
             if (kind is None or doubt.kind == kind) and (self.all.isChecked() or not self._is_settled(doubt))
         ]
-        before = self.list.currentIndex().row()
-        self.model.put(shown)
-        name = (present.kind, present.photos) if present else None
-        at = next((row for row, doubt in enumerate(shown) if (doubt.kind, doubt.photos) == name), max(0, before))
-        if shown:
-            self.list.setCurrentIndex(self.model.index(min(at, len(shown) - 1)))
-        self._doubt_chosen()
+        self.put(shown, _key)
 
     @property
     def present(self) -> Doubt | None:
         """The doubt that is shown."""
-        index = self.list.currentIndex()
-        doubt = self.model.things[index.row()] if index.isValid() and index.row() < len(self.model.things) else None
+        doubt = self.chosen()
         return doubt if isinstance(doubt, Doubt) else None
 
-    def _doubt_chosen(self) -> None:
+    def choose(self) -> None:
         self._evidence = None
         doubt = self.present
         if doubt is not None:
@@ -259,7 +210,7 @@ class DoubtsPage(Page):
 
     def _settled(self, done: set[tuple[DoubtKind, tuple[str, ...]]]) -> None:
         self._done |= done
-        self._filter()
+        self.filter()
 
     def _pass(self) -> None:
         doubt = self.present
@@ -290,7 +241,7 @@ class DoubtsPage(Page):
     def _show(self) -> None:
         open_doubts = [doubt for doubt in self._doubts if not self._is_settled(doubt)]
         self.counted.emit(len(open_doubts))
-        self.look.setVisible(self.desk.ledger is not None and not self.desk.looks_by_itself())
+        self.show_look()
         doubt = self.present
         of_people = doubt is not None and doubt.kind in OF_PEOPLE
         for key, button in self.buttons.items():

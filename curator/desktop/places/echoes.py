@@ -4,15 +4,14 @@ from __future__ import annotations
 
 from functools import partial
 
-from PySide6.QtCore import Qt, QTimer
-from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QListView, QPushButton, QVBoxLayout, QWidget
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QVBoxLayout
 
 from curator.desktop import theme
 from curator.desktop.desk import Desk
 from curator.desktop.echoes_words import facts_of, row_words, sentence
 from curator.desktop.icons import icon
-from curator.desktop.models.rows import RowsModel
-from curator.desktop.page import Page
+from curator.desktop.matters import MattersPage
 from curator.desktop.widgets.overlay import Mode, Overlay
 from curator.domain import Change, EchoAnswer, EchoGroup, EchoLink, Reading, Scope
 from curator.echoes.answers import keeping
@@ -20,42 +19,30 @@ from curator.echoes.step import find_echoes
 
 _MODES = ((Mode.BESIDE, "Beside", "N", "pairs"), (Mode.BLINK, "Blink", "K", "blink"), (Mode.WIPE, "Wipe", "W", "wipe"),
           (Mode.DIFFERENCE, "Difference", "F", "difference"))  # fmt: skip
-_LIST = 250
-_LATER_MS = 700
 
 
-class EchoesPage(Page):
+class EchoesPage(MattersPage):
     """Groups on the left, the chosen link on the right."""
 
     name = "Echoes"
     icon = "echoes"
+    matters = "echoes"
     purpose = "Settle what becomes of photos that show the same shot."
 
     def __init__(self, desk: Desk) -> None:
-        super().__init__(desk)
-        self._stale = True
+        super().__init__(desk, lambda group: row_words(group, self._is_settled(group)))
         self._groups: tuple[EchoGroup, ...] = ()
         self._done: set[str] = set()
         self._link = 0
         self._keep = ""
         self._facts: dict[str, Reading] = {}
         self._digests: dict[str, str] = {}
-        self.model = RowsModel(lambda group: row_words(group, self._is_settled(group)))
-        self.list = QListView()
-        self.list.setModel(self.model)
-        self.list.setUniformItemSizes(True)
-        self.list.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-        self.list.setFixedWidth(_LIST)
         self.list.setAccessibleName("Groups of echoes")
-        self.list.selectionModel().currentChanged.connect(lambda _now, _before: self._group_chosen())
         self.scope, self.change = QComboBox(), QComboBox()
         self.scope.addItems(["every scope", *(scope.value.replace("-", " ") for scope in Scope)])
         self.change.addItems(["every change", *(change.value for change in Change)])
         self.scope.setAccessibleName("Scope")
         self.change.setAccessibleName("Change")
-        self.all = QPushButton("Settled too")
-        self.look = QPushButton("Look for echoes")
-        self.look.setProperty("weight", "main")
         self.title = QLabel()
         self.title.setFont(theme.serif(1.15))
         self.title.setWordWrap(True)
@@ -64,14 +51,8 @@ class EchoesPage(Page):
         self.overlay = Overlay(desk)
         self.overlay.chosen.connect(self._mark)
         self.facts = [QLabel(), QLabel()]
-        self._later = QTimer(self)
-        self._later.setSingleShot(True)
-        self._later.setInterval(_LATER_MS)
-        self._later.timeout.connect(self._fetch)
         self._commands()
         self._lay_out()
-        self.scope.currentIndexChanged.connect(lambda _: self._filter())
-        self.change.currentIndexChanged.connect(lambda _: self._filter())
         self._show()
 
     # -- making it
@@ -109,14 +90,8 @@ class EchoesPage(Page):
         self.command("The two photos before", ",", partial(self._step_link, -1))
         self.command("Move the wipe's edge to the right", "Right", partial(self.overlay.move_wipe, 1))
         self.command("Move the wipe's edge to the left", "Left", partial(self.overlay.move_wipe, -1))
-        self.switch(self.all, "Show settled groups too", "A", self._filter)
-        self.bind(self.look, self.command("Look for echoes", "L", self._fetch))
-        self.all.setFocusPolicy(Qt.FocusPolicy.TabFocus)
 
     def _lay_out(self) -> None:
-        left = QVBoxLayout()
-        for widget in (self.scope, self.change, self.all, self.list, self.look):
-            left.addWidget(widget)
         modes = QHBoxLayout()
         for button in self.modes.values():
             modes.addWidget(button)
@@ -136,45 +111,26 @@ class EchoesPage(Page):
         right.addWidget(self.overlay, 1)
         right.addLayout(facts)
         right.addLayout(actions)
-        holder = QWidget()
-        holder.setLayout(left)
-        left.setContentsMargins(0, 0, 0, 0)
-        holder.setFixedWidth(_LIST)
         row = QHBoxLayout(self)
         row.setContentsMargins(20, 4, 20, 10)
         row.setSpacing(18)
-        row.addWidget(holder)
+        row.addWidget(self.side((self.scope, self.change)))
         row.addLayout(right, 1)
 
     # -- being told
 
-    def enter(self) -> None:
-        self.list.setFocus()
-        if self._stale and self.desk.looks_by_itself():
-            self._fetch()
-
     def leave(self) -> None:
         self._set_mode(Mode.BESIDE)
 
-    def ledger_opened(self) -> None:
-        self._stale = True
+    def forget(self) -> None:
         self._groups, self._done = (), set()
-        self.model.put(())
-        self._show()
-        if self.desk.looks_by_itself():
-            self._fetch()
-
-    def something_said(self) -> None:
-        self._stale = True
-        if self.desk.looks_by_itself():
-            self._later.start()
 
     def repaint_all(self) -> None:
         for mode, _, _, name in _MODES:
             self.modes[mode].setIcon(icon(name, self.desk.palette.ink))
         self.update()
 
-    def _fetch(self) -> None:
+    def fetch(self) -> None:
         self._stale = False
         self.desk.start(
             "Looking for echoes",
@@ -185,16 +141,15 @@ class EchoesPage(Page):
 
     def _found(self, groups: tuple[EchoGroup, ...]) -> None:
         self._groups, self._done = groups, set()
-        self._filter()
+        self.filter()
 
     # -- the list
 
     def _is_settled(self, group: EchoGroup) -> bool:
         return group.settled or group.id in self._done
 
-    def _filter(self) -> None:
+    def filter(self) -> None:
         """Show the groups of the chosen scope and change, those across splits and identities first."""
-        present = self._present()
         scopes, changes = list(Scope), list(Change)
         scope = scopes[self.scope.currentIndex() - 1] if self.scope.currentIndex() else None
         change = changes[self.change.currentIndex() - 1] if self.change.currentIndex() else None
@@ -206,23 +161,17 @@ class EchoesPage(Page):
             and (self.all.isChecked() or not self._is_settled(group))
         ]
         shown.sort(key=lambda group: (-scopes.index(group.scope), group.photos))
-        before = self.list.currentIndex().row()
-        self.model.put(shown)
-        at = next((row for row, group in enumerate(shown) if present and group.id == present.id), max(0, before))
-        if shown:
-            self.list.setCurrentIndex(self.model.index(min(at, len(shown) - 1)))
-        self._group_chosen()
+        self.put(shown, lambda group: group.id)
 
     def _present(self) -> EchoGroup | None:
-        index = self.list.currentIndex()
-        group = self.model.things[index.row()] if index.isValid() and index.row() < len(self.model.things) else None
+        group = self.chosen()
         return group if isinstance(group, EchoGroup) else None
 
     def _present_link(self) -> EchoLink | None:
         group = self._present()
         return group.links[self._link % len(group.links)] if group else None
 
-    def _group_chosen(self) -> None:
+    def choose(self) -> None:
         group = self._present()
         self._link = 0
         self._keep = group.suggested_keep if group else ""
@@ -239,7 +188,7 @@ class EchoesPage(Page):
         verdicts = [self.desk.echo_verdict(a, b, answer) for a, b, answer in answers]
         if verdicts and self.desk.say(name, echo_verdicts=verdicts) is not None:
             self._done |= {group.id for group in groups}
-            self._filter()
+            self.filter()
 
     def _settle(self) -> None:
         group = self._present()
@@ -303,7 +252,7 @@ class EchoesPage(Page):
     def _show(self) -> None:
         open_groups = [group for group in self._groups if not self._is_settled(group)]
         self.counted.emit(len(open_groups))
-        self.look.setVisible(self.desk.ledger is not None and not self.desk.looks_by_itself())
+        self.show_look()
         group, link = self._present(), self._present_link()
         for button in (*self.actions_, *self.modes.values()):
             button.setEnabled(link is not None)

@@ -12,20 +12,19 @@ from PySide6.QtWidgets import (
     QLabel,
     QLineEdit,
     QPushButton,
-    QScrollArea,
-    QSplitter,
     QStackedWidget,
     QVBoxLayout,
     QWidget,
 )
 
+from curator.desktop.amounts import counted
 from curator.desktop.desk import Desk
 from curator.desktop.editions_preview import Preview
 from curator.desktop.editions_words import written_words
 from curator.desktop.editions_written import Written
 from curator.desktop.page import Page
 from curator.desktop.recipe_form import RecipeForm
-from curator.desktop.splits_words import counted
+from curator.desktop.recipe_side import RecipeSide, answer_enter, beside, scrolled
 from curator.desktop.work import Counter
 from curator.editions.audit_report import AuditReport
 from curator.editions.plan import EditionPlan
@@ -61,40 +60,26 @@ class EditionsPage(Page):
     # -- making it
 
     def _make_buttons(self) -> None:
-        self.plan = QPushButton("Plan   P")
-        self.bind(self.plan, self.command("Show what an edition would hold", "P", self._plan))
+        self.recipe = RecipeSide(self, self.form, "Show what an edition would hold", self._plan)
+        self.plan = self.recipe.plan
         self.write = QPushButton("Write   W")
         self.write.setProperty("weight", "main")
         self.bind(self.write, self.command("Write the edition", "W", self._write))
         self.choose = QPushButton("…   D")
         self.bind(self.choose, self.command("Choose where to write", "D", self._choose))
-        self.load = QPushButton("Open   O")
-        self.bind(self.load, self.command("Open a recipe", "O", self.form.open_file))
-        self.keep = QPushButton("Save   S")
-        self.bind(self.keep, self.command("Save the recipe", "S", self.form.save_file))
         self.turn = QPushButton()
         self.bind(self.turn, self.command("Turn between the plan and the written editions", "E", self._turn))
         self.bind(self.preview.ask, self.command("Look at the pairs owed a review in Pairs", "A", self._ask))
         self.bind(self.written.audit, self.command("Audit the chosen edition again", "L", self._audit))
         self.bind(self.written.report, self.command("Open the report of the chosen edition", "R", self._open_report))
         self.bind(self.written.folder, self.command("Open the folder of the chosen edition", "F", self._open_folder))
-        for button in (self.plan, self.write, self.choose, self.load, self.keep, self.turn, self.preview.ask):
-            button.setAutoDefault(True)  # so that Enter presses it
+        answer_enter(self.write, self.choose, self.turn, self.preview.ask)
 
     def _lay_out(self) -> None:
-        left = QWidget()
-        column = QVBoxLayout(left)
-        column.setContentsMargins(0, 0, 0, 0)
-        column.addWidget(_scrolled(self.form), 1)
-        row = QHBoxLayout()
-        for button in (self.load, self.keep):
-            row.addWidget(button, 1)
-        column.addLayout(row)
-        column.addWidget(self.plan)
         right = QWidget()
         side = QVBoxLayout(right)
         side.setContentsMargins(0, 0, 0, 0)
-        side.addWidget(_scrolled(self.preview), 1)
+        side.addWidget(scrolled(self.preview), 1)
         where = QHBoxLayout()
         where.setContentsMargins(12, 0, 0, 0)
         where.addWidget(QLabel("Write to"))
@@ -102,14 +87,7 @@ class EditionsPage(Page):
         where.addWidget(self.choose)
         where.addWidget(self.write)
         side.addLayout(where)
-        self.splitter = QSplitter()
-        self.splitter.setChildrenCollapsible(False)
-        self.splitter.addWidget(left)
-        self.splitter.addWidget(right)
-        self.splitter.setStretchFactor(1, 1)
-        wide = self.desk.memory.number("Editions/form", _FORM_WIDTH)
-        self.splitter.setSizes([wide, 3 * wide])
-        self.splitter.splitterMoved.connect(lambda at, _: self.desk.memory.put("Editions/form", at))
+        self.splitter = beside(self, self.recipe, right, _FORM_WIDTH)
         self.leaves = QStackedWidget()
         self.leaves.addWidget(self.splitter)
         self.leaves.addWidget(self.written)
@@ -284,12 +262,3 @@ def _free(folder: Path, number: int) -> Path:
     while (folder / f"edition-{number}").exists():
         number += 1
     return folder / f"edition-{number}"
-
-
-def _scrolled(widget: QWidget) -> QScrollArea:
-    area = QScrollArea()
-    area.setWidgetResizable(True)
-    area.setFrameShape(QScrollArea.Shape.NoFrame)
-    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-    area.setWidget(widget)
-    return area

@@ -3,17 +3,18 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QHBoxLayout, QLabel, QPushButton, QScrollArea, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QPushButton, QVBoxLayout, QWidget
 
 from curator.desktop import theme
+from curator.desktop.amounts import counted
 from curator.desktop.desk import Desk
 from curator.desktop.page import Page
 from curator.desktop.recipe_form import RecipeForm
+from curator.desktop.recipe_side import RecipeSide, answer_enter, beside, scrolled
 from curator.desktop.splits_ties import TiedGroups
 from curator.desktop.splits_words import (
     audit_lines,
     balance_bars,
-    counted,
     gap,
     headline,
     open_matters,
@@ -55,8 +56,8 @@ class SplitsPage(Page):
     # -- making it
 
     def _make_buttons(self) -> None:
-        self.plan = QPushButton("Plan   P")
-        self.bind(self.plan, self.command("Plan the split", "P", self._plan))
+        self.recipe = RecipeSide(self, self.form, "Plan the split", self._plan)
+        self.plan = self.recipe.plan
         self.force = QPushButton("Put into force   F")
         self.force.setProperty("weight", "main")
         self.bind(self.force, self.command("Put the planned split into force", "F", self._put_into_force))
@@ -64,12 +65,7 @@ class SplitsPage(Page):
         self.bind(self.look, self.command("Audit the split in force for leaks", "L", self._look))
         self.ask = QPushButton("Ask about these in Pairs   A")
         self.bind(self.ask, self.command("Ask about the ties of this group in Pairs", "A", self._ask))
-        self.load = QPushButton("Open   O")
-        self.bind(self.load, self.command("Open a recipe", "O", self.form.open_file))
-        self.keep = QPushButton("Save   S")
-        self.bind(self.keep, self.command("Save the recipe", "S", self.form.save_file))
-        for button in (self.plan, self.force, self.look, self.ask, self.load, self.keep):
-            button.setAutoDefault(True)  # so that Enter presses it
+        answer_enter(self.force, self.look, self.ask)
 
     def _make_sheet(self) -> None:
         self.title = QLabel()
@@ -91,15 +87,6 @@ class SplitsPage(Page):
         self.groups.chosen.connect(self._show_ask)
 
     def _lay_out(self) -> None:
-        left = QWidget()
-        column = QVBoxLayout(left)
-        column.setContentsMargins(0, 0, 0, 0)
-        column.addWidget(_scrolled(self.form), 1)
-        row = QHBoxLayout()
-        for button in (self.load, self.keep):
-            row.addWidget(button, 1)
-        column.addLayout(row)
-        column.addWidget(self.plan)
         sheet = QWidget()
         body = QVBoxLayout(sheet)
         body.setContentsMargins(12, 0, 8, 8)
@@ -113,7 +100,7 @@ class SplitsPage(Page):
         right = QWidget()
         side = QVBoxLayout(right)
         side.setContentsMargins(0, 0, 0, 0)
-        self.sheet = _scrolled(sheet)
+        self.sheet = scrolled(sheet)
         self.sheet.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         side.addWidget(self.sheet, 1)
         acts = QHBoxLayout()
@@ -121,14 +108,7 @@ class SplitsPage(Page):
         acts.addWidget(self.look)
         acts.addWidget(self.force)
         side.addLayout(acts)
-        self.splitter = QSplitter()
-        self.splitter.setChildrenCollapsible(False)
-        self.splitter.addWidget(left)
-        self.splitter.addWidget(right)
-        self.splitter.setStretchFactor(1, 1)
-        wide = self.desk.memory.number("Splits/form", _FORM_WIDTH)
-        self.splitter.setSizes([wide, 3 * wide])
-        self.splitter.splitterMoved.connect(lambda at, _: self.desk.memory.put("Splits/form", at))
+        self.splitter = beside(self, self.recipe, right, _FORM_WIDTH)
         whole = QVBoxLayout(self)
         whole.setContentsMargins(20, 8, 20, 10)
         whole.addWidget(self.splitter)
@@ -288,12 +268,3 @@ class SplitsPage(Page):
 
 def _present(ledger: Ledger, progress: Counter) -> SplitReport | None:
     return present_split(ledger, progress=progress)
-
-
-def _scrolled(widget: QWidget) -> QScrollArea:
-    area = QScrollArea()
-    area.setWidgetResizable(True)
-    area.setFrameShape(QScrollArea.Shape.NoFrame)
-    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-    area.setWidget(widget)
-    return area

@@ -21,6 +21,7 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
+from curator.desktop.amounts import counted
 from curator.desktop.desk import Desk
 from curator.desktop.models.identities import ENTRY, IdentitiesModel, Order
 from curator.desktop.models.leaves import Index
@@ -167,7 +168,7 @@ class RollList(QWidget):
         self.model.filter(self.search.text(), self._among)
         shown, total = self.model.rowCount(), self.model.total
         of = "" if shown == total else f"{shown:,} of "
-        self.counts.setText(f"{of}{total:,} identities, {self.model.photos:,} photos")
+        self.counts.setText(f"{of}{counted(total, 'identity')}, {counted(self.model.photos, 'photo')}")
         self.counts.setToolTip(self.counts.text())
         self._keep_present()
 

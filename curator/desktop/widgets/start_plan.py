@@ -19,6 +19,7 @@ from PySide6.QtWidgets import (
 )
 
 from curator.desktop import theme
+from curator.desktop.amounts import counted
 from curator.intake.step import LookAhead
 
 
@@ -41,10 +42,10 @@ def found_in_words(ahead: LookAhead) -> str:
     """What lies in a photo root, in sentences."""
     if not ahead.photos:
         return "There are no photos in identity folders here. Each person's photos belong in a folder of their own."
-    said = [f"{_many(ahead.photos, 'photo')} of {_many(ahead.identities, 'identity')}, {_bytes(ahead.size)}"]
-    said.append(f"up to {_many(ahead.most, 'photo')} of one identity")
+    said = [f"{counted(ahead.photos, 'photo')} of {counted(ahead.identities, 'identity')}, {_bytes(ahead.size)}"]
+    said.append(f"up to {counted(ahead.most, 'photo')} of one identity")
     if ahead.alone:
-        said.append(f"{_many(ahead.alone, 'identity')} with a single photo, which gives no mated pair")
+        said.append(f"{counted(ahead.alone, 'identity')} with a single photo, which gives no mated pair")
     return "; ".join(said) + "."
 
 
@@ -151,12 +152,6 @@ def _wrapped(voice: str = "") -> QLabel:
     label.setWordWrap(True)
     label.setProperty("voice", voice)
     return label
-
-
-def _many(n: int, noun: str) -> str:
-    if n == 1:
-        return f"1 {noun}"
-    return f"{n:,} {noun[:-1]}ies" if noun.endswith("y") else f"{n:,} {noun}s"
 
 
 def _bytes(n: int) -> str:
