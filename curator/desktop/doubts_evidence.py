@@ -5,10 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from curator.desktop.doubts_words import OF_PEOPLE
-from curator.desktop.work import Counter
 from curator.domain import Doubt, DoubtKind
 from curator.ledger import Ledger
-from curator.pairs.step import identity_sheet
+from curator.pairs.step import sheet_photos
 
 Photos = tuple[tuple[str, str], ...]
 """Names and digests."""
@@ -31,26 +30,23 @@ class Evidence:
     groups: tuple[Group, ...]
 
 
-def evidence_of(ledger: Ledger, doubt: Doubt, progress: Counter) -> Evidence:
-    """Gather the evidence of a doubt. Raises what the steps raise."""
-    sheets = {name: _photos(ledger, name, progress) for name in doubt.identities}
-    if doubt.kind not in OF_PEOPLE:
-        photo = doubt.photos[0]
-        digest = ledger.digests_of([photo]).get(photo, "")
-        groups = tuple(Group(name, _without(photos, photo)) for name, photos in sheets.items())
-        return Evidence(((photo, digest),), groups)
+def evidence_of(ledger: Ledger, doubt: Doubt) -> Evidence:
+    """Gather the evidence of a doubt. Raises what the ledger raises."""
     if doubt.kind == DoubtKind.TWO_PEOPLE_ONE_FOLDER:
-        whole = sheets[doubt.identities[0]]
-        parts = [tuple(row for row in whole if row[0] in part) for part in map(set, doubt.evidence["parts"])]
-        groups = tuple(Group(f"{doubt.identities[0]}, part {n}", part) for n, part in enumerate(parts, 1))
+        (identity,) = doubt.identities
+        parts = [_photos(ledger, identity, frozenset(part)) for part in doubt.evidence["parts"]]
+        groups = tuple(Group(f"{identity}, part {n}", part) for n, part in enumerate(parts, 1))
     else:
-        groups = tuple(Group(name, photos) for name, photos in sheets.items())
-    return Evidence(tuple(group.photos[0] for group in groups if group.photos), groups)
+        groups = tuple(Group(name, _photos(ledger, name)) for name in doubt.identities)
+    if doubt.kind in OF_PEOPLE:
+        return Evidence(tuple(group.photos[0] for group in groups if group.photos), groups)
+    photo = doubt.photos[0]
+    others = tuple(Group(group.title, _without(group.photos, photo)) for group in groups)
+    return Evidence(((photo, ledger.digests_of([photo]).get(photo, "")),), others)
 
 
-def _photos(ledger: Ledger, identity: str, progress: Counter) -> Photos:
-    sheet = identity_sheet(ledger, identity, progress=progress)
-    return tuple((photo.name, photo.digest) for photo in sheet.photos)
+def _photos(ledger: Ledger, identity: str, among: frozenset[str] | None = None) -> Photos:
+    return tuple((photo.name, photo.digest) for photo in sheet_photos(ledger, identity, among))
 
 
 def _without(photos: Photos, name: str) -> Photos:

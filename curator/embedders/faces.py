@@ -25,7 +25,7 @@ _LEVEL_STEP = 1.3
 """Each level against the one before. The detector answers well to faces of 62 to 105 px, so levels may lie apart."""
 _PORTRAIT_LEVEL = 2
 """The level scanned first, which answers to faces of about half the shorter side, as most portraits have them. Begun
-with the smallest level, two thirds of 404 drawn portraits were scanned three times and half as many pixels more."""
+with the smallest level, the scan of drawn portraits takes a third more pixels (`tests/bench/bench_faces.py`)."""
 _SMALLEST_FACE = 1.0 / 12.0
 """Share of the photo's longer side below which faces are not looked for: it bounds the work on large photos."""
 _MOST_ENLARGED = 2.6

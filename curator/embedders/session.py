@@ -83,7 +83,7 @@ class Embedder:
         pictures = crops[..., ::-1] if card.channel_order == "bgr" else crops
         mean, scale = np.array(card.mean, dtype=np.float32), np.array(card.scale, dtype=np.float32)
         if card.layout == "nchw":
-            # While the pictures are bytes: to move four times as much, in stretches of three, costs ten times as much.
+            # While the pictures are bytes: to move four times as much, in stretches of three, costs many times as much.
             pictures = pictures.transpose(0, 3, 1, 2)
             mean, scale = mean.reshape(-1, 1, 1), scale.reshape(-1, 1, 1)
         values = np.ascontiguousarray(pictures).astype(np.float32)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -36,7 +36,10 @@ def load_trust(ledger: Ledger, *, progress: Progress) -> tuple[Roll, Readings, T
     roll = ledger.roll()
     readings = ledger.readings(roll)
     if not readings.embedded.any():
-        raise BadInput(f"The ledger {ledger.path} holds no photo with an embedding; run intake first.")
+        raise BadInput(
+            f"The ledger {ledger.path} holds no photo with an embedding; run intake first, "
+            "or see in its roll why none can be used."
+        )
     settled = settle(ledger.verdicts())
     place = roll.index_of()
     pairs = {
@@ -142,9 +145,12 @@ def spread(ledger: Ledger, *, progress: Progress) -> dict[str, float]:
     return {name: round(value, 4) for name, value in zip(names, values.tolist(), strict=True) if value == value}
 
 
-def sheet_photos(ledger: Ledger, identity: str) -> tuple[SheetPhoto, ...]:
-    """The photos of one identity from most to least typical, without the others it is near to."""
-    rows = ledger.photos_of(identity)
+def sheet_photos(ledger: Ledger, identity: str, among: Collection[str] | None = None) -> tuple[SheetPhoto, ...]:
+    """The photos of one identity from most to least typical, without the others it is near to.
+
+    `among`: only these of its photos, each held against the rest of these.
+    """
+    rows = [row for row in ledger.photos_of(identity) if among is None or row[0] in among]
     readings = ledger.readings_of([digest for _, digest in rows if digest])
     attributes = ledger.attributes_of([name for name, _ in rows])
     embedded = [

@@ -9,7 +9,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from curator.ledger import Ledger
-from curator.pairs.step import identity_sheet, spread
+from curator.pairs.step import identity_sheet, sheet_photos, spread
 from curator.pairs.typical import Crowd, brief, nearest_identities, spreads, to_own_people
 from curator.progress import Silent
 
@@ -81,3 +81,12 @@ def test_a_sheet_goes_from_most_to_least_typical_and_names_its_neighbours(
         assert all(dict(ledger.photos_of(near.name))[near.photo] == near.digest for near in sheet.nearest)
         assert set(spread(ledger, progress=Silent())) <= set(ledger.roll().identities)
         assert identity_sheet(ledger, "nobody", progress=Silent()).photos == ()
+
+
+def test_photos_among_some_are_held_against_these_alone(made_ledger: Callable[..., Ledger]) -> None:
+    with made_ledger(people=5) as ledger:
+        identity = ledger.roll().identities[0]
+        some = [name for name, _ in ledger.photos_of(identity)][:2]
+        pair = sheet_photos(ledger, identity, some)
+        assert sorted(photo.name for photo in pair) == some
+        assert pair[0].similarity == pytest.approx(pair[1].similarity)

@@ -170,7 +170,7 @@ class DoubtsPage(MattersPage):
         if doubt is not None:
             self.desk.start(
                 "Gathering the evidence",
-                lambda ledger, progress: (doubt, evidence_of(ledger, doubt, progress)),
+                lambda ledger, _progress: (doubt, evidence_of(ledger, doubt)),
                 self._gathered,
                 key="evidence",
             )

@@ -224,6 +224,7 @@ class PairsPage(Page):
         self._looking, self._stale = False, True
         self._show()
         self.why.setText(sentence)
+        self.advised.emit(sentence)
 
     # -- answering
 
@@ -321,6 +322,7 @@ class PairsPage(Page):
             filed = "" if blind else f"filed as {'mated' if question.label else 'non-mated'}, "
             words += [f"similarity {question.similarity:.3f}", f"{filed}trust {question.trust:.3f}"]
         self.told.setText("   ·   ".join(words))
+        self.told.setVisible(bool(words))  # an empty line would take its height from the photos
         self._show_context(question, blind)
         self._show_pace(left)
         self._fetch_ahead()
@@ -333,6 +335,7 @@ class PairsPage(Page):
             caption.clear()
             context.show_photos(())
         self.told.clear()
+        self.told.hide()
         self.why.setText(self._why_none(left))
         self._show_pace(left)
         if self.why.text():
