@@ -2,15 +2,17 @@
 
 import os
 import shutil
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from pathlib import Path
 
 import numpy as np
 import pytest
 from PIL import Image
+from pytestqt.qtbot import QtBot
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 
+from curator.desktop.window import Window
 from curator.doubts.step import find_doubts
 from curator.echoes.step import find_echoes
 from curator.intake.step import run
@@ -70,3 +72,22 @@ def desk_ledger(tmp_path: Path, _read_once: Path) -> Path:
 def read_ledger(desk_ledger: Path) -> Callable[[], Ledger]:
     """Opens the ledger from outside the window."""
     return lambda: Ledger.open(desk_ledger)
+
+
+@pytest.fixture
+def shown(qtbot: QtBot) -> Iterator[Callable[..., Window]]:
+    """Opens a window on a ledger, shown and active; all are let go of after the test."""
+    windows: list[Window] = []
+
+    def opened(ledger: Path | None, width: int = 1200, height: int = 800) -> Window:
+        window = Window(ledger)
+        windows.append(window)
+        window.resize(width, height)
+        qtbot.addWidget(window)
+        with qtbot.waitActive(window):
+            window.show()
+        return window
+
+    yield opened
+    for window in windows:
+        window.desk.close()

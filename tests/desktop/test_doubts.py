@@ -1,7 +1,7 @@
 """Doubts settled by key; the ledger is read from outside the window."""
 
 import json
-from collections.abc import Iterator
+from collections.abc import Callable
 from pathlib import Path
 
 import pytest
@@ -34,17 +34,13 @@ _DOUBTS = (
 
 
 @pytest.fixture
-def window(qtbot: QtBot, desk_ledger: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[Window]:
+def window(qtbot: QtBot, shown: Callable[..., Window], desk_ledger: Path, monkeypatch: pytest.MonkeyPatch) -> Window:
     # The doubts are given: what is tried here is what a person does with them.
     monkeypatch.setattr("curator.desktop.places.doubts.find_doubts", lambda *_, **__: _DOUBTS)
-    made = Window(desk_ledger)
-    qtbot.addWidget(made)
-    with qtbot.waitActive(made):
-        made.show()
+    made = shown(desk_ledger)
     qtbot.keyClick(made, Key.Key_3, CTRL)
     qtbot.waitUntil(lambda: not made.desk.work.busy and len(_page(made).model.things) == 4, timeout=60_000)
-    yield made
-    made.desk.close()
+    return made
 
 
 def _page(window: Window) -> DoubtsPage:

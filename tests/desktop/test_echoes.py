@@ -1,6 +1,6 @@
 """Echoes settled by key; the ledger is read from outside the window."""
 
-from collections.abc import Iterator
+from collections.abc import Callable
 from pathlib import Path
 
 import numpy as np
@@ -53,15 +53,11 @@ def echoes_ledger(tmp_path: Path, _echoes_root: Path) -> Path:
 
 
 @pytest.fixture
-def window(qtbot: QtBot, echoes_ledger: Path) -> Iterator[Window]:
-    made = Window(echoes_ledger)
-    qtbot.addWidget(made)
-    with qtbot.waitActive(made):
-        made.show()
+def window(qtbot: QtBot, shown: Callable[..., Window], echoes_ledger: Path) -> Window:
+    made = shown(echoes_ledger)
     qtbot.keyClick(made, Key.Key_2, CTRL)
     qtbot.waitUntil(lambda: not made.desk.work.busy and len(_page(made).model.things) == 3, timeout=60_000)
-    yield made
-    made.desk.close()
+    return made
 
 
 def _page(window: Window) -> EchoesPage:

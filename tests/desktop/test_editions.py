@@ -3,7 +3,7 @@
 import hashlib
 import io
 import shutil
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from pathlib import Path
 
 import numpy as np
@@ -97,19 +97,17 @@ def desk_ledger(tmp_path: Path, _taken_in: Path) -> Path:
 
 
 @pytest.fixture
-def window(qtbot: QtBot, desk_ledger: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[Window]:
-    made = Window(desk_ledger)
-    qtbot.addWidget(made)
-    with qtbot.waitActive(made):
-        made.show()
+def window(
+    qtbot: QtBot, shown: Callable[..., Window], desk_ledger: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> Window:
+    made = shown(desk_ledger)
     qtbot.keyClick(made, Key.Key_6, CTRL)
     file = tmp_path / "small.toml"
     file.write_text(RECIPE)
     monkeypatch.setattr(QFileDialog, "getOpenFileName", lambda *_: (str(file), ""))
     qtbot.keyClick(_page(made), Key.Key_O)
     _settle(qtbot, made)
-    yield made
-    made.desk.close()
+    return made
 
 
 def _settle(qtbot: QtBot, window: Window) -> None:

@@ -1,7 +1,7 @@
 """The annotator's desk, worked by keys and clicks; the ledger is read from outside the window."""
 
 import json
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from pathlib import Path
 
 import pytest
@@ -21,15 +21,11 @@ CTRL = Qt.KeyboardModifier.ControlModifier
 
 
 @pytest.fixture
-def window(qtbot: QtBot, desk_ledger: Path) -> Iterator[Window]:
-    made = Window(desk_ledger)
-    qtbot.addWidget(made)
-    with qtbot.waitActive(made):
-        made.show()
+def window(qtbot: QtBot, shown: Callable[..., Window], desk_ledger: Path) -> Window:
+    made = shown(desk_ledger)
     qtbot.keyClick(made, Key.Key_4, CTRL)
     qtbot.waitUntil(lambda: not made.desk.work.busy and _page(made).sitting.present is not None, timeout=60_000)
-    yield made
-    made.desk.close()
+    return made
 
 
 def _page(window: Window) -> PairsPage:

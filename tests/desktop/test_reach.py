@@ -1,6 +1,6 @@
 """Every place can be worked by keyboard alone and with large fonts, and says the key of each of its buttons."""
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
 
 import pytest
@@ -16,15 +16,10 @@ _MOST_TABS = 150
 
 
 @pytest.fixture
-def window(qtbot: QtBot, desk_ledger: Path) -> Iterator[Window]:
-    made = Window(desk_ledger)
-    made.resize(1000, 650)
-    qtbot.addWidget(made)
-    with qtbot.waitActive(made):
-        made.show()
+def window(qtbot: QtBot, shown: Callable[..., Window], desk_ledger: Path) -> Window:
+    made = shown(desk_ledger, 1000, 650)
     qtbot.waitUntil(lambda: not made.desk.work.busy, timeout=60_000)
-    yield made
-    made.desk.close()
+    return made
 
 
 def _go(qtbot: QtBot, window: Window, place: str) -> QWidget:

@@ -1,6 +1,6 @@
 """The place Splits, worked by keys and clicks; what it says and keeps is read from outside the window."""
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from pathlib import Path
 
 import pytest
@@ -21,15 +21,11 @@ LEFT = Qt.MouseButton.LeftButton
 
 
 @pytest.fixture
-def window(qtbot: QtBot, desk_ledger: Path) -> Iterator[Window]:
-    made = Window(desk_ledger)
-    qtbot.addWidget(made)
-    with qtbot.waitActive(made):
-        made.show()
+def window(qtbot: QtBot, shown: Callable[..., Window], desk_ledger: Path) -> Window:
+    made = shown(desk_ledger)
     qtbot.keyClick(made, Key.Key_5, CTRL)
     _settle(qtbot, made)
-    yield made
-    made.desk.close()
+    return made
 
 
 def _settle(qtbot: QtBot, window: Window) -> None:

@@ -55,3 +55,24 @@ def reading() -> Callable[..., Reading]:
         )
 
     return made
+
+
+@pytest.fixture
+def fill(photo_file: Callable[..., PhotoFile], reading: Callable[..., Reading]) -> Callable[[Ledger], None]:
+    """Puts four photos of two identities on the roll, one of them unread and one unreadable."""
+
+    def filled(ledger: Ledger) -> None:
+        with ledger.writing():
+            ledger.set_maker("m1", framing="face", card="default")
+            ledger.put_chunk(
+                [
+                    photo_file("b/1.jpg", "b" * 64),
+                    photo_file("a/2.jpg", "e" * 64),
+                    photo_file("a/1.jpg", "a" * 64),
+                    photo_file("a/3.jpg", None, "permission denied"),
+                ],
+                [reading("a" * 64), reading("b" * 64), Reading(digest="e" * 64, why="empty file")],
+                maker="m1",
+            )
+
+    return filled

@@ -104,21 +104,9 @@ def test_a_ledger_of_the_first_schema_is_brought_up_and_keeps_its_verdicts(tmp_p
         assert ledger.acts() == []
 
 
-def test_a_part_of_the_roll_is_looked_at_without_the_rest(
-    ledger: Ledger, photo_file: Callable[..., PhotoFile], reading: Callable[..., Reading]
-) -> None:
+def test_a_part_of_the_roll_is_looked_at_without_the_rest(ledger: Ledger, fill: Callable[[Ledger], None]) -> None:
+    fill(ledger)
     with ledger.writing():
-        ledger.set_maker("m1", framing="face", card="default")
-        ledger.put_chunk(
-            [
-                photo_file("b/1.jpg", "b" * 64),
-                photo_file("a/2.jpg", "e" * 64),
-                photo_file("a/1.jpg", "a" * 64),
-                photo_file("a/3.jpg", None, "permission denied"),
-            ],
-            [reading("a" * 64), reading("b" * 64), Reading(digest="e" * 64, why="empty file")],
-            maker="m1",
-        )
         ledger.put_attributes({"a/1.jpg": {"club": "heron", "season": ""}, "b/1.jpg": {"club": "weir"}})
     assert ledger.identity_counts() == [("a", 3), ("b", 1)]
     assert ledger.photos_of("a") == [("a/1.jpg", "a" * 64), ("a/2.jpg", "e" * 64), ("a/3.jpg", "")]

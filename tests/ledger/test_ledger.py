@@ -21,25 +21,8 @@ from curator.ledger import Ledger
 _SAME = Verdict("a/1.jpg", "b/1.jpg", PairAnswer.SAME, "ada", "2026-05-01T10:00:00+00:00")
 
 
-def _filled(ledger: Ledger, photo_file: Callable[..., PhotoFile], reading: Callable[..., Reading]) -> None:
-    with ledger.writing():
-        ledger.set_maker("m1", framing="face", card="default")
-        ledger.put_chunk(
-            [
-                photo_file("b/1.jpg", "b" * 64),
-                photo_file("a/2.jpg", "e" * 64),
-                photo_file("a/1.jpg", "a" * 64),
-                photo_file("a/3.jpg", None, "permission denied"),
-            ],
-            [reading("a" * 64), reading("b" * 64), Reading(digest="e" * 64, why="empty file")],
-            maker="m1",
-        )
-
-
-def test_photos_and_readings_come_back_along_the_roll(
-    ledger: Ledger, photo_file: Callable[..., PhotoFile], reading: Callable[..., Reading]
-) -> None:
-    _filled(ledger, photo_file, reading)
+def test_photos_and_readings_come_back_along_the_roll(ledger: Ledger, fill: Callable[[Ledger], None]) -> None:
+    fill(ledger)
     roll = ledger.roll()
     assert roll.photos == ("a/1.jpg", "a/2.jpg", "a/3.jpg", "b/1.jpg")
     assert roll.identities == ("a", "b")
@@ -58,20 +41,18 @@ def test_photos_and_readings_come_back_along_the_roll(
     assert ledger.refusals("m2") == {}
 
 
-def test_another_maker_has_read_nothing(
-    ledger: Ledger, photo_file: Callable[..., PhotoFile], reading: Callable[..., Reading]
-) -> None:
-    _filled(ledger, photo_file, reading)
+def test_another_maker_has_read_nothing(ledger: Ledger, fill: Callable[[Ledger], None]) -> None:
+    fill(ledger)
     with ledger.writing():
         ledger.set_maker("m2", framing="whole", card="default")
     assert ledger.readings(ledger.roll()).why[0] == "not read yet"
 
 
 def test_derived_data_may_be_deleted_and_the_verdicts_stay(
-    tmp_path: Path, root: Path, photo_file: Callable[..., PhotoFile], reading: Callable[..., Reading]
+    tmp_path: Path, root: Path, fill: Callable[[Ledger], None]
 ) -> None:
     with Ledger.create(tmp_path / "ledger", root) as ledger:
-        _filled(ledger, photo_file, reading)
+        fill(ledger)
         with ledger.writing():
             ledger.put_verdicts([_SAME])
     for file in (tmp_path / "ledger" / "derived").iterdir():
@@ -97,11 +78,9 @@ def test_a_repeated_verdict_is_harmless_and_none_can_be_changed(ledger: Ledger, 
     assert ledger.verdicts() == [_SAME, single]
 
 
-def test_the_state_changes_with_the_roll_and_the_verdicts(
-    ledger: Ledger, photo_file: Callable[..., PhotoFile], reading: Callable[..., Reading]
-) -> None:
+def test_the_state_changes_with_the_roll_and_the_verdicts(ledger: Ledger, fill: Callable[[Ledger], None]) -> None:
     states = [ledger.state()]
-    _filled(ledger, photo_file, reading)
+    fill(ledger)
     states.append(ledger.state())
     with ledger.writing():
         ledger.put_verdicts([_SAME])
